@@ -1,0 +1,1 @@
+//! Holds no code: the checks are the files beside it.
