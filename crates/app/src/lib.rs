@@ -1,1 +1,15 @@
-//! Table of contents to come.
+//! Whitesmith: the window, and the same work without one.
+//!
+//! * [`headless`]: one file a command; arguments in, documented JSON or a table out.
+//! * [`solving`]: a white spec and its emitters as a problem for the optimiser.
+//! * [`state`]: the project, every change to it as an edit with its inverse, and what is derived from it.
+//! * [`jobs`]: work too long for a frame, in the background.
+//! * [`window`]: what is drawn; it reads the state, emits edits and holds no physics.
+//! * [`render`]: the same drawing on the processor alone, for pictures and tests.
+
+pub mod headless;
+pub mod jobs;
+pub mod render;
+pub mod solving;
+pub mod state;
+pub mod window;

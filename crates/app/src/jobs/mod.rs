@@ -1,0 +1,1 @@
+//! Background jobs: one queue, progress, cancelling, the latest request wins.

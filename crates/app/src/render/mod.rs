@@ -1,0 +1,1 @@
+//! Drawing on the processor alone, for pictures and tests.

@@ -1,0 +1,1 @@
+//! A white spec and its emitters as a problem for the optimiser.

@@ -1,0 +1,1 @@
+//! The window: the loom, the ledger and the benches.
