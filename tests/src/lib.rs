@@ -1,1 +1,3 @@
-//! Holds no code: the checks are the files beside it.
+//! What the checks beside it share.
+
+pub mod table;
