@@ -1,1 +1,3 @@
 //! Table of contents to come.
+
+pub mod unmix;
