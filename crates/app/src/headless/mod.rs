@@ -7,8 +7,8 @@ mod args;
 mod exit;
 
 pub use args::{
-    AnswerArgs, AxisAnswer, BudgetArgs, DecimalAnswer, EmitterArgs, LimitArgs, MaximiseChoice, OrdinateAnswer,
-    OutputArgs, PerAnswer, SolvingArgs, TargetArgs,
+    AnswerArgs, AxisAnswer, BudgetArgs, DecimalAnswer, EmitterArgs, LimitArgs, MaximiseChoice,
+    OrdinateAnswer, OutputArgs, PerAnswer, SolvingArgs, TargetArgs,
 };
 pub use exit::{BadInput, Exit};
 

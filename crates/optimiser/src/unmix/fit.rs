@@ -44,7 +44,11 @@ pub(super) struct Found {
 }
 
 impl Problem {
-    pub(super) fn new(measured: &Spectrum, emitters: &[Spectrum], freedom: Freedom) -> Result<Self, UnmixError> {
+    pub(super) fn new(
+        measured: &Spectrum,
+        emitters: &[Spectrum],
+        freedom: Freedom,
+    ) -> Result<Self, UnmixError> {
         let inside = |nm: f64| (FIRST_NM..=LAST_NM).contains(&nm);
         let (nm, values): (Vec<f64>, Vec<f64>) = measured
             .wavelengths_nm()
@@ -61,14 +65,22 @@ impl Problem {
         if nm.len() < unknowns + 1 {
             return Err(UnmixError::TooFewSamples { needed: unknowns + 1, found: nm.len() });
         }
-        Ok(Self { nm, measured: values, curves: emitters.iter().map(Curve::of).collect(), powers_as_given, freedom })
+        Ok(Self {
+            nm,
+            measured: values,
+            curves: emitters.iter().map(Curve::of).collect(),
+            powers_as_given,
+            freedom,
+        })
     }
 
     fn shapes(&self, pose: &Pose) -> Vec<Vec<f64>> {
         self.curves
             .iter()
             .enumerate()
-            .map(|(i, c)| self.nm.iter().map(|nm| c.moved(*nm, pose.shift_nm[i], pose.stretch[i]).0).collect())
+            .map(|(i, c)| {
+                self.nm.iter().map(|nm| c.moved(*nm, pose.shift_nm[i], pose.stretch[i]).0).collect()
+            })
             .collect()
     }
 
@@ -146,7 +158,8 @@ impl Problem {
         let chosen: Vec<Vec<f64>> = kept.iter().map(|&c| columns[c].clone()).collect();
         let normal = Normal::of(&chosen, residual);
         let k = kept.len();
-        let damped = DMatrix::from_fn(k, k, |a, b| normal.gram[(a, b)] * if a == b { 1.0 + damping } else { 1.0 });
+        let damped =
+            DMatrix::from_fn(k, k, |a, b| normal.gram[(a, b)] * if a == b { 1.0 + damping } else { 1.0 });
         let step = damped.cholesky()?.solve(&DVector::from_fn(k, |a, _| normal.right[a]));
         let mut next = pose.clone();
         let shifts = if self.freedom.shift { amplitudes.iter().filter(|a| **a > 0.0).count() } else { 0 };

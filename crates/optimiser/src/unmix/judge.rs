@@ -54,7 +54,8 @@ pub(super) fn judge(problem: &Problem, found: Found, freedom: Freedom) -> Unmixe
 /// over those and itself); ∂shareᵢ/∂powerⱼ = (δᵢⱼ − shareᵢ)/Σ power.
 fn sigmas(found: &Found, shares: &[f64], total: f64) -> Vec<Option<f64>> {
     let n = shares.len();
-    let free: Vec<usize> = (0..found.columns.len()).filter(|&c| found.amplitudes[found.column_emitter[c]] > 0.0).collect();
+    let free: Vec<usize> =
+        (0..found.columns.len()).filter(|&c| found.amplitudes[found.column_emitter[c]] > 0.0).collect();
     let samples = found.residual.len();
     let freedom = samples.saturating_sub(free.len()).max(1);
     let variance = found.residual.iter().map(|r| r * r).sum::<f64>() / freedom as f64;
@@ -110,11 +111,12 @@ impl LeftOver {
     fn of(problem: &Problem, residual: &[f64]) -> Self {
         let nm = &problem.nm;
         let samples = nm.len();
-        let widths: Vec<f64> = (0..samples)
-            .map(|k| 0.5 * (nm[(k + 1).min(samples - 1)] - nm[k.saturating_sub(1)]))
-            .collect();
-        let power = problem.measured.iter().zip(&widths).map(|(v, w)| v * w).sum::<f64>().max(f64::MIN_POSITIVE);
-        let mut out = Self { missing: 0.0, missing_near_nm: nm[0], extra: 0.0, extra_near_nm: nm[0], noise: 0.0 };
+        let widths: Vec<f64> =
+            (0..samples).map(|k| 0.5 * (nm[(k + 1).min(samples - 1)] - nm[k.saturating_sub(1)])).collect();
+        let power =
+            problem.measured.iter().zip(&widths).map(|(v, w)| v * w).sum::<f64>().max(f64::MIN_POSITIVE);
+        let mut out =
+            Self { missing: 0.0, missing_near_nm: nm[0], extra: 0.0, extra_near_nm: nm[0], noise: 0.0 };
         let (mut most, mut least) = (0.0, 0.0);
         let (mut low, mut high) = (0, 0);
         let mut averaged = 0.0;

@@ -54,7 +54,8 @@ impl Normal {
         let k = active.len();
         let gram = DMatrix::from_fn(k, k, |a, b| self.gram[(active[a], active[b])]);
         let factor = gram.cholesky()?;
-        let scaled = (0..k).all(|a| factor.l_dirty()[(a, a)].powi(2) >= DEPENDENT * self.gram[(active[a], active[a])]);
+        let scaled =
+            (0..k).all(|a| factor.l_dirty()[(a, a)].powi(2) >= DEPENDENT * self.gram[(active[a], active[a])]);
         scaled.then(|| factor.inverse())
     }
 
@@ -74,7 +75,9 @@ impl Normal {
             let enter = (0..n)
                 .filter(|&i| !barred[i] && !active.contains(&i))
                 .map(|i| (i, gradient[i] / self.gram[(i, i)].sqrt().max(f64::MIN_POSITIVE)))
-                .filter(|&(i, g)| g > 1e-14 * (self.right[i].abs() / self.gram[(i, i)].sqrt().max(f64::MIN_POSITIVE)))
+                .filter(|&(i, g)| {
+                    g > 1e-14 * (self.right[i].abs() / self.gram[(i, i)].sqrt().max(f64::MIN_POSITIVE))
+                })
                 .max_by(|a, b| a.1.total_cmp(&b.1));
             let Some((enter, _)) = enter else { break };
             active.push(enter);

@@ -149,9 +149,17 @@ fn a_missing_emitter_between_the_others_is_noticed_too() {
     let all = set();
     let shares = [0.15, 0.1, 0.2, 0.2, 0.15, 0.15, 0.05];
     let power = blend(&all, &shares);
-    let without_teal: Vec<Spectrum> = all.iter().enumerate().filter(|(i, _)| *i != 1).map(|(_, e)| e.clone()).collect();
+    let without_teal: Vec<Spectrum> =
+        all.iter().enumerate().filter(|(i, _)| *i != 1).map(|(_, e)| e.clone()).collect();
     let found = unmix(&Spectrum::new(grid(), power).unwrap(), &without_teal, Freedom::default()).unwrap();
-    assert!(found.doubts.iter().any(|d| matches!(d, Doubt::MissingLight { near_nm, .. } if (470.0..510.0).contains(near_nm))), "{:?}", found.doubts);
+    assert!(
+        found
+            .doubts
+            .iter()
+            .any(|d| matches!(d, Doubt::MissingLight { near_nm, .. } if (470.0..510.0).contains(near_nm))),
+        "{:?}",
+        found.doubts
+    );
 }
 
 #[test]
