@@ -1,5 +1,6 @@
 //! Colour rendering index of CIE 13.3-1995: Ra and R1–R15.
 
+use crate::kernel::{Arithmetic, tcs_differences};
 use crate::observer::Observer;
 use crate::reference::Reference;
 use crate::tensor::Tensor;
@@ -24,6 +25,19 @@ pub struct Cri {
 /// U* = 13W*(u−u₀), V* = 13W*(v−v₀); Rᵢ = 100 − 4.6 ΔEᵢ. Nothing is rounded or clamped.
 /// *Source:* CIE 13.3-1995; sample 15 as JIS Z 8726 / CIE 2024 data set.
 pub fn cri(light: &Tensor, reference: &Reference) -> Cri {
+    cri_with(light, reference, Arithmetic::Dispatched)
+}
+
+/// [`cri`] with a chosen instruction set.
+pub fn cri_with(light: &Tensor, reference: &Reference, arithmetic: Arithmetic) -> Cri {
+    let differences = tcs_differences(light, reference, arithmetic);
+    let r: [f64; 15] = std::array::from_fn(|i| 100.0 - 4.6 * differences[i]);
+    let distance = light.xyz(Observer::Cie1931).uv().distance(reference.white_uv());
+    Cri { ra: r[..8].iter().sum::<f64>() / 8.0, r, reference_distance_uv: distance }
+}
+
+/// [`cri`] as the standard writes it, in plain scalar arithmetic: the yardstick of the fast path.
+pub fn cri_plain(light: &Tensor, reference: &Reference) -> Cri {
     let white_xyz = light.xyz(Observer::Cie1931);
     let white = white_xyz.uv();
     let c = |u: f64, v: f64| (4.0 - u - 10.0 * v) / v;

@@ -1,6 +1,7 @@
 //! Colour fidelity and gamut: CIE 224:2017 Rf, and TM-30 Rf, Rg and the sixteen hue bins.
 
 use crate::appearance_model::{CAT02, cam02_ucs};
+use crate::kernel::{Arithmetic, ces_scored};
 use crate::observer::Observer;
 use crate::reference::Reference;
 use crate::tensor::Tensor;
@@ -46,6 +47,19 @@ pub fn fidelity_of_difference(delta_e: f64) -> f64 {
 /// mean: Rcs = (Δa cos θ + Δb sin θ)/ρ, Rhs = (−Δa sin θ + Δb cos θ)/ρ; Rg = 100 × ratio of the polygons of means.
 /// *Source:* CIE 224:2017; ANSI/IES TM-30-20.
 pub fn fidelity(light: &Tensor, reference: &Reference) -> Fidelity {
+    fidelity_with(light, reference, Arithmetic::Dispatched)
+}
+
+/// [`fidelity`] with a chosen instruction set.
+pub fn fidelity_with(light: &Tensor, reference: &Reference, arithmetic: Arithmetic) -> Fidelity {
+    let scored = ces_scored(light, reference, arithmetic);
+    let samples = std::array::from_fn(|i| scored.scores[i]);
+    scored.bins.finish(scored.rf, samples, scored.bin_scores)
+}
+
+/// [`fidelity`] in plain scalar arithmetic with the functions of the standard library: slow, and the yardstick of the
+/// fast path.
+pub fn fidelity_plain(light: &Tensor, reference: &Reference) -> Fidelity {
     let white = CAT02.times(light.xyz(Observer::Cie1964).to_array());
     let mut differences = [0.0; SAMPLES];
     let mut bins = BinSums::default();
@@ -61,7 +75,9 @@ pub fn fidelity(light: &Tensor, reference: &Reference) -> Fidelity {
             differences[i],
         );
     }
-    bins.finish(&differences)
+    let rf = fidelity_of_difference(differences.iter().sum::<f64>() / SAMPLES as f64);
+    let bin_scores = bins.mean_differences().map(fidelity_of_difference);
+    bins.finish(rf, differences.map(fidelity_of_difference), bin_scores)
 }
 
 /// Sums per hue bin.
@@ -81,27 +97,60 @@ impl BinSums {
         }
     }
 
-    /// Rg alone.
-    pub(crate) fn gamut(&self) -> Option<f64> {
-        if self.sums.iter().any(|sums| sums[0] == 0.0) {
-            return None;
-        }
-        let mean = |bin: usize, k: usize| self.sums[bin][k] / self.sums[bin][0];
-        let area = |k: usize| {
-            (0..HUE_BINS)
-                .map(|i| (i, (i + 1) % HUE_BINS))
-                .map(|(i, j)| mean(i, k) * mean(j, k + 1) - mean(i, k + 1) * mean(j, k))
-                .sum::<f64>()
-        };
-        Some(100.0 * area(3) / area(1))
+    fn mean(&self, bin: usize, k: usize) -> f64 {
+        self.sums[bin][k] / self.sums[bin][0]
     }
 
-    pub(crate) fn finish(&self, differences: &[f64; SAMPLES]) -> Fidelity {
-        let mean_difference = differences.iter().sum::<f64>() / SAMPLES as f64;
+    fn any_empty(&self) -> bool {
+        self.sums.iter().any(|sums| sums[0] == 0.0)
+    }
+
+    /// Mean difference of each bin; zero where it is empty.
+    #[inline(always)]
+    pub(crate) fn mean_differences(&self) -> [f64; HUE_BINS] {
+        let mut out = [0.0; HUE_BINS];
+        for (mean, sums) in out.iter_mut().zip(&self.sums) {
+            if sums[0] > 0.0 {
+                *mean = sums[5] / sums[0];
+            }
+        }
+        out
+    }
+
+    /// Twice the signed area of the polygon of bin means whose a′ stands at `k`.
+    fn area(&self, k: usize) -> f64 {
+        (0..HUE_BINS)
+            .map(|i| (i, (i + 1) % HUE_BINS))
+            .map(|(i, j)| self.mean(i, k) * self.mean(j, k + 1) - self.mean(i, k + 1) * self.mean(j, k))
+            .sum()
+    }
+
+    /// Rg alone.
+    pub(crate) fn gamut(&self) -> Option<f64> {
+        (!self.any_empty()).then(|| 100.0 * self.area(3) / self.area(1))
+    }
+
+    /// Slopes of Rg over the a′, b′ of any sample of each bin.
+    pub(crate) fn gamut_slopes(&self) -> Option<[[f64; 2]; HUE_BINS]> {
+        if self.any_empty() {
+            return None;
+        }
+        let scale = 100.0 / self.area(1);
+        Some(std::array::from_fn(|i| {
+            let (before, after) = ((i + HUE_BINS - 1) % HUE_BINS, (i + 1) % HUE_BINS);
+            let per_sample = scale / self.sums[i][0];
+            [
+                per_sample * (self.mean(after, 4) - self.mean(before, 4)),
+                per_sample * (self.mean(before, 3) - self.mean(after, 3)),
+            ]
+        }))
+    }
+
+    pub(crate) fn finish(&self, rf: f64, samples: [f64; SAMPLES], bin_scores: [f64; HUE_BINS]) -> Fidelity {
         let mut out = Fidelity {
-            rf: fidelity_of_difference(mean_difference),
+            rf,
             rg: self.gamut(),
-            samples: differences.map(fidelity_of_difference),
+            samples,
             rf_bins: [None; HUE_BINS],
             rcs_bins: [None; HUE_BINS],
             rhs_bins: [None; HUE_BINS],
@@ -112,13 +161,15 @@ impl BinSums {
             if sums[0] == 0.0 {
                 continue;
             }
-            let [ra, rb, ta, tb, difference] = std::array::from_fn(|k| sums[k + 1] / sums[0]);
+            let inverse = 1.0 / sums[0];
+            let [ra, rb, ta, tb] =
+                [sums[1] * inverse, sums[2] * inverse, sums[3] * inverse, sums[4] * inverse];
             let [sin, cos] = BISECTORS[bin];
-            let length = ra.hypot(rb);
+            let per_length = 1.0 / (ra * ra + rb * rb).sqrt();
             let (da, db) = (ta - ra, tb - rb);
-            out.rf_bins[bin] = Some(fidelity_of_difference(difference));
-            out.rcs_bins[bin] = Some(100.0 * (da * cos + db * sin) / length);
-            out.rhs_bins[bin] = Some((db * cos - da * sin) / length);
+            out.rf_bins[bin] = Some(bin_scores[bin]);
+            out.rcs_bins[bin] = Some(100.0 * (da * cos + db * sin) * per_length);
+            out.rhs_bins[bin] = Some((db * cos - da * sin) * per_length);
             out.test_means[bin] = Some([ta, tb]);
             out.reference_means[bin] = Some([ra, rb]);
         }

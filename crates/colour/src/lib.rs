@@ -28,6 +28,7 @@ pub mod chromaticity;
 pub mod cri;
 pub mod fidelity;
 pub mod illuminant;
+pub mod kernel;
 pub mod locus;
 pub mod measure;
 pub mod observer;
