@@ -81,12 +81,16 @@ impl Project {
         }
     }
 
+    /// The identity [`Project::take_id`] would give: above every one in use and every one given before.
+    pub fn unused_id(&self) -> u64 {
+        let used = self.emitters.iter().map(|e| e.id.0).chain(self.sets.iter().map(|s| s.id.0)).max();
+        self.next_id.max(used.map_or(1, |highest| highest.saturating_add(1)))
+    }
+
     /// A fresh identity.
     pub fn take_id(&mut self) -> u64 {
-        let highest =
-            self.emitters.iter().map(|e| e.id.0).chain(self.sets.iter().map(|s| s.id.0)).max().unwrap_or(0);
-        let id = self.next_id.max(highest + 1);
-        self.next_id = id + 1;
+        let id = self.unused_id();
+        self.next_id = id.saturating_add(1);
         id
     }
 
