@@ -116,11 +116,8 @@ fn rearrange(project: &mut Project, edit: Edit) -> Result<Edit, EditError> {
                 project.current_set = near.map(|s| s.id);
             }
             let set = Box::new(project.sets.remove(at));
-            let edits = vec![
-                Edit::InsertSet { at, set },
-                Edit::NextId(project.next_id),
-                Edit::SelectSet(chosen),
-            ];
+            let edits =
+                vec![Edit::InsertSet { at, set }, Edit::NextId(project.next_id), Edit::SelectSet(chosen)];
             Ok(Edit::Together { label, edits })
         }
         Edit::MoveSet { set, to } => {
@@ -366,10 +363,7 @@ fn take_out(set: &mut EmitterSet, emitter: EmitterId, name: &str) -> Result<(), 
 }
 
 /// Shares that make a blend, scaled so that they sum to 1 as closely as numbers allow.
-fn check_shares(
-    project: &Project,
-    members: &[Member],
-    mut shares: Vec<f64>) -> Result<Vec<f64>, EditError> {
+fn check_shares(project: &Project, members: &[Member], mut shares: Vec<f64>) -> Result<Vec<f64>, EditError> {
     let fault = |fault| Err(EditError::Shares(fault));
     if shares.len() != members.len() {
         return fault(ShareFault::Count { expected: members.len(), found: shares.len() });

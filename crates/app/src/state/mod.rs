@@ -157,7 +157,8 @@ impl State {
         self.end_gesture();
         let Some(step) = self.history.undone.pop() else { return false };
         for edit in step.made.iter().cloned() {
-            make::make(&mut self.project, edit).expect("a step that was made once can be made from the same state");
+            make::make(&mut self.project, edit)
+                .expect("a step that was made once can be made from the same state");
         }
         self.revision += 1;
         self.journal.push(JournalEntry::Redo { edits: step.made.clone() });
@@ -293,3 +294,5 @@ fn inserting(at: usize, set: EmitterSet) -> Edit {
     }
 }
 
+#[cfg(test)]
+mod tests;

@@ -246,10 +246,8 @@ impl HeldWhite {
         }
         let wanted = self.columns[row].map(|c| -c);
         let y = solve_singular(gram, wanted)?;
-        let change: Vec<f64> = moving
-            .iter()
-            .map(|&k| self.columns[k].iter().zip(&y).map(|(c, y)| c * y).sum::<f64>())
-            .collect();
+        let change: Vec<f64> =
+            moving.iter().map(|&k| self.columns[k].iter().zip(&y).map(|(c, y)| c * y).sum::<f64>()).collect();
         let reached = (0..3).all(|c| {
             let sum: f64 = moving.iter().zip(&change).map(|(&k, d)| self.columns[k][c] * d).sum();
             (sum - wanted[c]).abs() < 1e-9

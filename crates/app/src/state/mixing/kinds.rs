@@ -80,11 +80,14 @@ pub fn pull(
     if f <= 0.0 {
         return Err(Stuck::NoWeight);
     }
-    let others = || {
-        members.iter().zip(weights).enumerate().filter(|(k, (m, _))| *k != row && rebalance::is_free(m))
-    };
-    let held: f64 =
-        members.iter().zip(weights).filter(|(m, _)| m.on && m.locked).map(|(m, w)| m.share * w.of(kind)).sum();
+    let others =
+        || members.iter().zip(weights).enumerate().filter(|(k, (m, _))| *k != row && rebalance::is_free(m));
+    let held: f64 = members
+        .iter()
+        .zip(weights)
+        .filter(|(m, _)| m.on && m.locked)
+        .map(|(m, w)| m.share * w.of(kind))
+        .sum();
     let sum: f64 = others().map(|(_, (m, _))| m.share).sum();
     let phi = if sum > 1e-12 {
         others().map(|(_, (m, w))| m.share * w.of(kind)).sum::<f64>() / sum
