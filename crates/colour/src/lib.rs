@@ -15,7 +15,7 @@
 //! * Inputs: [`spectrum`], [shapes] (emitter models), [`illuminant`] (Planckian, daylight, the CIE sources).
 //! * Linear quantities: [`tensor`], [`observer`].
 //! * White: [`chromaticity`], [`locus`] (CCT and Duv), [`dominant`], [`tolerance`] (bins, ellipses, circles).
-//! * Rendering: [`reference`], [`cri`] (CIE 13.3), [`fidelity`] (CIE 224, TM-30), [`annex_e`].
+//! * Rendering: [`mod@reference`], [`cri`] (CIE 13.3), [`fidelity`] (CIE 224, TM-30), [`annex_e`].
 //! * Other actions of light: [`alpha_opic`], [`photobiology`].
 //! * Everything at once: [`measure`]. For a solver's inner loop: [`kernel`]. For a screen: [`appearance`].
 //!
@@ -24,8 +24,11 @@
 //! its source and licence on its first lines.
 
 pub mod alpha_opic;
+pub mod annex_e;
+pub mod appearance;
 pub mod chromaticity;
 pub mod cri;
+pub mod dominant;
 pub mod fidelity;
 pub mod illuminant;
 pub mod kernel;
@@ -34,8 +37,10 @@ pub mod measure;
 pub mod observer;
 pub mod photobiology;
 pub mod reference;
+pub mod shapes;
 pub mod spectrum;
 pub mod tensor;
+pub mod tolerance;
 
 mod appearance_model;
 mod tables;

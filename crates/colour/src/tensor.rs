@@ -41,6 +41,23 @@ pub(crate) mod column {
 }
 use column::{CES_LANES, COUNT, TCS_LANES};
 
+/// L = −0.92 X + 2.718 Y + 0.202 Z: CIE 13.3's d, (1.708v + 0.404 − 1.481u)/v, is L/Y.
+#[expect(
+    clippy::approx_constant,
+    reason = "2.718 follows from the coefficients of CIE 13.3; it is not Euler's number"
+)]
+pub(crate) const ADAPTATION_L: [f64; 3] = [-0.92, 2.718, 0.202];
+
+#[inline(always)]
+pub(crate) fn adaptation_l(x: f64, y: f64, z: f64) -> f64 {
+    ADAPTATION_L[1] * y + ADAPTATION_L[0] * x + ADAPTATION_L[2] * z
+}
+
+/// X, Y, Z of a sample from its lanes.
+pub(crate) fn sample_xyz(y: f64, z: f64, l: f64) -> Xyz {
+    Xyz { x: (l - ADAPTATION_L[1] * y - ADAPTATION_L[2] * z) / ADAPTATION_L[0], y, z }
+}
+
 /// The linear quantities of one spectrum or blend (380–780 nm, 1 nm sums).
 #[derive(Clone, PartialEq)]
 pub struct Tensor {
@@ -82,7 +99,7 @@ static WEIGHTS: LazyLock<Vec<[f64; COUNT]>> = LazyLock::new(|| {
     for (i, row) in rows.iter_mut().enumerate() {
         let two = Observer::Cie1931.column();
         let (x, y, z) = (row[two], row[two + 1], row[two + 2]);
-        let l = 2.718 * y - 0.92 * x + 0.202 * z;
+        let l = adaptation_l(x, y, z);
         for lane in 0..TCS_LANES {
             let reflectance = tcs[lane.min(14)][i];
             row[column::TCS + lane] = reflectance * y;
@@ -194,7 +211,7 @@ impl Tensor {
             let y = self.values[column::TCS + i];
             let z = self.values[column::TCS + TCS_LANES + i];
             let l = self.values[column::TCS + 2 * TCS_LANES + i];
-            Xyz { x: (2.718 * y + 0.202 * z - l) / 0.92, y, z }
+            sample_xyz(y, z, l)
         })
     }
 

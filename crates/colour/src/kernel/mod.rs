@@ -16,7 +16,7 @@ use crate::fidelity::{BinSums, FIDELITY_FACTOR, HUE_BINS, fidelity_of_difference
 use crate::observer::Observer;
 use crate::reference::Reference;
 use crate::tensor::column::{self, CES_LANES, COUNT, TCS_LANES};
-use crate::tensor::{Tensor, TensorSet};
+use crate::tensor::{Tensor, TensorSet, sample_xyz};
 use crate::{Xyz, appearance_model::CAT02};
 use dispatch::Lanewise;
 use lanes::{Lanes, blend, dot, sum99};
@@ -83,7 +83,7 @@ impl RenderingKernel {
         let lanes = &self.tcs[i].0;
         std::array::from_fn(|s| {
             let (y, z, l) = (lanes[s], lanes[TCS_LANES + s], lanes[2 * TCS_LANES + s]);
-            Xyz { x: (2.718 * y + 0.202 * z - l) / 0.92, y, z }
+            sample_xyz(y, z, l)
         })
     }
 

@@ -6,6 +6,7 @@
 use super::lanes::sum16;
 use super::maths::{fma, pow};
 use crate::reference::Reference;
+use crate::tensor::{ADAPTATION_L, adaptation_l};
 
 const LANES: usize = 16;
 
@@ -26,7 +27,7 @@ impl Adaptation {
     #[inline(always)]
     pub(crate) fn new(white: [f64; 3], reference: &Reference) -> Adaptation {
         let [x, y, z] = white;
-        let white_l = 2.718 * y - 0.92 * x + 0.202 * z;
+        let white_l = adaptation_l(x, y, z);
         let (u, v) = (reference.white.u, reference.white.v);
         let c_reference = (4.0 - u - 10.0 * v) / v;
         let d_reference = (1.708 * v + 0.404 - 1.481 * u) / v;
@@ -114,8 +115,8 @@ pub(crate) fn adjoints<const FMA: bool>(
     let by_beta = sum16(&over_beta) * beta;
     let [_, y, z] = white;
     [
-        0.92 * by_beta / white_l,
-        (by_alpha + by_beta - sum16(&over_scale)) / y - 2.718 * by_beta / white_l,
-        -by_alpha / z - 0.202 * by_beta / white_l,
+        -ADAPTATION_L[0] * by_beta / white_l,
+        (by_alpha + by_beta - sum16(&over_scale)) / y - ADAPTATION_L[1] * by_beta / white_l,
+        -by_alpha / z - ADAPTATION_L[2] * by_beta / white_l,
     ]
 }
