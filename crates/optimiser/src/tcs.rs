@@ -1,0 +1,249 @@
+//! Ra and R9 at a fixed white: values, gradients, and bounds over a box of the free directions.
+//!
+//! With the white and the reference fixed, CIE 13.3 turns each sample into three linear forms of the blend, A, B and C, and
+//! its Y: U* = 13 W A/C, V* = 13 W B/C, W* = 25 Y^⅓ − 17. Against a fixed direction e the colour shift projects to
+//! S = W·Q with Q = (13(e₀A + e₁B) + e₂C)/C, a product of two functions whose differences from the centre are *exactly*
+//! Q − Q₀ = (ν·δ)/C with ν = ∇(13(e₀A + e₁B) + e₂C) − Q₀∇C, and W − W₀ = slope·(∇Y·δ). So
+//! S − S₀ = (W/C)(ν·δ) + Q₀·slope·(∇Y·δ), and intervals of the two scalar factors over the box give a tangent with a
+//! second-order remainder, from below and from above.
+
+use crate::lanes::{fma, pow};
+use crate::models::Model;
+use crate::space::Space;
+use colour::{Observer, Reference, Tensor};
+
+/// Samples 1–9, padded to a multiple of four.
+pub(crate) const TCS: usize = 12;
+
+/// A, B, C, Y of each sample.
+type Forms = [[f64; TCS]; 4];
+
+/// Ra and R9 as functions of the free directions.
+#[derive(Clone)]
+pub(crate) struct TcsForms {
+    base: Forms,
+    along: Vec<Forms>,
+    reference: [[f64; TCS]; 3],
+}
+
+/// Both models of Ra and R9 around a point.
+#[derive(Clone, Debug, Default)]
+pub(crate) struct TcsModels {
+    pub(crate) ra: Model,
+    pub(crate) r9: Model,
+}
+
+impl TcsForms {
+    /// Builds the forms for emitters (unit power) at the white of `space`.
+    pub(crate) fn new(emitters: &[Tensor], space: &Space, reference: &Reference) -> TcsForms {
+        let ur = reference.white_uv();
+        let (cr, dr) = ((4.0 - ur.u - 10.0 * ur.v) / ur.v, (1.708 * ur.v + 0.404 - 1.481 * ur.u) / ur.v);
+        // Of the white only its chromaticity and Y matter; both are fixed.
+        let w = space.white;
+        let (ck, dk) = (2.0 * w[2] / w[1], 2.718 - 0.92 * w[0] / w[1] + 0.202 * w[2] / w[1]);
+        let (al, be) = (cr / ck, dr / dk);
+        let ky = 100.0 / w[1];
+        let of = |t: &Tensor| -> Forms {
+            let xyz = t.tcs_xyz();
+            let mut f = [[0.0; TCS]; 4];
+            for i in 0..TCS {
+                let s = xyz[i.min(8)];
+                let l = 2.718 * s.y - 0.92 * s.x + 0.202 * s.z;
+                let c = 16.518 * s.y + 2.962 * al * s.z - be * l;
+                f[0][i] = ky * (10.872 * s.y + 0.808 * al * s.z - 4.0 * be * l - ur.u * c);
+                f[1][i] = ky * (5.52 * s.y - ur.v * c);
+                f[2][i] = ky * c;
+                f[3][i] = ky * s.y;
+            }
+            f
+        };
+        let each: Vec<Forms> = emitters.iter().map(of).collect();
+        let combine = |weights: &[f64]| {
+            let mut f = [[0.0; TCS]; 4];
+            for (e, w) in each.iter().zip(weights) {
+                for k in 0..4 {
+                    for i in 0..TCS {
+                        f[k][i] += w * e[k][i];
+                    }
+                }
+            }
+            f
+        };
+        let mut r = [[0.0; TCS]; 3];
+        for i in 0..TCS {
+            let uvw = reference.tcs_uvw(i.min(8));
+            for k in 0..3 {
+                r[k][i] = uvw[k];
+            }
+        }
+        TcsForms {
+            base: combine(&space.origin),
+            along: (0..space.d).map(|j| combine(space.direction(j))).collect(),
+            reference: r,
+        }
+    }
+
+    /// Ra and R9 at a point, with gradients in `out.*.grad`.
+    #[inline(always)]
+    pub(crate) fn point<const F: bool>(&self, t: &[f64], out: &mut TcsModels) {
+        self.around::<F, false, false>(t, t, out);
+    }
+
+    /// Models over the box centre ± radius. `HIGH` adds the bound from above on the shifts (for upper limits).
+    #[inline(always)]
+    pub(crate) fn around<const F: bool, const BOX: bool, const HIGH: bool>(
+        &self,
+        centre: &[f64],
+        radius: &[f64],
+        out: &mut TcsModels,
+    ) {
+        let d = self.along.len();
+        let mut f = self.base;
+        let mut half = [[0.0; TCS]; 4];
+        for j in 0..d {
+            let (q, c) = (&self.along[j], centre[j]);
+            for k in 0..4 {
+                for i in 0..TCS {
+                    f[k][i] = fma::<F>(c, q[k][i], f[k][i]);
+                }
+            }
+            if BOX {
+                let r = radius[j];
+                for k in 2..4 {
+                    for i in 0..TCS {
+                        half[k][i] = fma::<F>(r, q[k][i].abs(), half[k][i]);
+                    }
+                }
+            }
+        }
+        let mut low = [0.0; TCS];
+        let mut high = [0.0; TCS];
+        // coefficients on ∇A, ∇B, ∇C, ∇Y
+        let mut co = [[0.0; TCS]; 4];
+        // ν = n0∇A + n1∇B + n2∇C and the radii of the two factors
+        let mut nu = [[0.0; TCS]; 3];
+        let mut rad = [[0.0; TCS]; 2];
+        let mut side = [[0.0; TCS]; 4];
+        for i in 0..TCS {
+            let (a, b, c, y) = (f[0][i], f[1][i], f[2][i], f[3][i]);
+            let y = y.max(1e-9);
+            let c = if c.abs() < 1e-9 { 1e-9 } else { c };
+            let cube = pow::<F>(y, 1.0 / 3.0);
+            let w = fma::<F>(25.0, cube, -17.0);
+            let slope = 25.0 / 3.0 / (cube * cube);
+            let ic = 1.0 / c;
+            let (ac, bc) = (a * ic, b * ic);
+            let (du, dv, dw) = (
+                13.0 * w * ac - self.reference[0][i],
+                13.0 * w * bc - self.reference[1][i],
+                w - self.reference[2][i],
+            );
+            let n = (du * du + dv * dv + dw * dw + 1e-24).sqrt();
+            let is = 1.0 / n;
+            let (e0, e1, e2) = (13.0 * du * is, 13.0 * dv * is, dw * is);
+            let q = e0 * ac + e1 * bc + e2;
+            let (mut k1, mut k2) = (w * ic, q * slope);
+            nu[0][i] = e0;
+            nu[1][i] = e1;
+            nu[2][i] = e2 - q;
+            if BOX {
+                let (rc, ry) = (half[2][i], half[3][i]);
+                let (cl, ch) = (c - rc, c + rc);
+                let (yl, yh) = (y - ry, y + ry);
+                let sound = cl > 1e-7 && yl > 1e-4;
+                let (cl, yl) = (cl.max(1e-7), yl.max(1e-4));
+                let ql = pow::<F>(yl, 1.0 / 3.0);
+                let wl = fma::<F>(25.0, ql, -17.0);
+                // W is concave: its chord is below the tangent
+                let wh = w + slope * (yh - y);
+                let (icl, ich) = (1.0 / cl, 1.0 / ch);
+                let lo = (wl * ich).min(wl * icl);
+                let hi = (wh * ich).max(wh * icl);
+                // slope of W between the centre and y: W′ is convex and falls
+                let slope_high = 0.5 * (25.0 / 3.0 / (ql * ql) + slope);
+                let slope_low = slope * (1.0 - ry / (3.0 * y)).max(0.0);
+                k1 = 0.5 * (lo + hi);
+                rad[0][i] = 0.5 * (hi - lo);
+                k2 = q * 0.5 * (slope_high + slope_low);
+                rad[1][i] = q.abs() * 0.5 * (slope_high - slope_low);
+                if HIGH {
+                    side[0][i] = ac;
+                    side[1][i] = bc;
+                    side[2][i] = lo.abs().max(hi.abs());
+                    side[3][i] = slope_high * ry;
+                }
+                low[i] = if sound { n } else { f64::NEG_INFINITY };
+                high[i] = if sound { n } else { f64::INFINITY };
+            } else {
+                low[i] = n;
+            }
+            co[0][i] = k1 * e0;
+            co[1][i] = k1 * e1;
+            co[2][i] = k1 * (e2 - q);
+            co[3][i] = k2;
+        }
+        let (mut reach_n, mut reach_y) = ([0.0; TCS], [0.0; TCS]);
+        let (mut reach_a, mut reach_b) = ([0.0; TCS], [0.0; TCS]);
+        for j in 0..d {
+            let q = &self.along[j];
+            let mut g = [0.0; TCS];
+            for i in 0..TCS {
+                g[i] = fma::<F>(
+                    co[0][i],
+                    q[0][i],
+                    fma::<F>(co[1][i], q[1][i], fma::<F>(co[2][i], q[2][i], co[3][i] * q[3][i])),
+                );
+            }
+            if BOX {
+                let r = radius[j];
+                for i in 0..TCS {
+                    let v = fma::<F>(nu[0][i], q[0][i], fma::<F>(nu[1][i], q[1][i], nu[2][i] * q[2][i]));
+                    reach_n[i] = fma::<F>(r, v.abs(), reach_n[i]);
+                    reach_y[i] = fma::<F>(r, q[3][i].abs(), reach_y[i]);
+                    if HIGH {
+                        reach_a[i] = fma::<F>(r, (q[0][i] - side[0][i] * q[2][i]).abs(), reach_a[i]);
+                        reach_b[i] = fma::<F>(r, (q[1][i] - side[1][i] * q[2][i]).abs(), reach_b[i]);
+                    }
+                }
+            }
+            let sum = ((g[0] + g[4]) + (g[1] + g[5])) + ((g[2] + g[6]) + (g[3] + g[7]));
+            out.ra.grad[j] = -4.6 / 8.0 * sum;
+            out.r9.grad[j] = -4.6 * g[8];
+        }
+        if !BOX {
+            let ra = 100.0 - 4.6 / 8.0 * low[..8].iter().sum::<f64>();
+            out.ra.set_point(ra);
+            out.r9.set_point(100.0 - 4.6 * low[8]);
+            return;
+        }
+        for i in 0..TCS {
+            let rem = rad[0][i] * reach_n[i] + rad[1][i] * reach_y[i];
+            low[i] -= rem;
+            if HIGH {
+                let wy = side[3][i];
+                let u = 13.0 * (side[2][i] * reach_a[i] + side[0][i].abs() * wy);
+                let v = 13.0 * (side[2][i] * reach_b[i] + side[1][i].abs() * wy);
+                let move_ = (u * u + v * v + wy * wy).sqrt();
+                let n = high[i];
+                let across = if n > 2.0 * move_ { move_ * move_ / (2.0 * (n - move_)) } else { 2.0 * move_ };
+                high[i] += rem + across;
+            }
+        }
+        let mean_low = 1.0 / 8.0 * low[..8].iter().sum::<f64>();
+        out.ra.upper = 100.0 - 4.6 * mean_low;
+        out.r9.upper = 100.0 - 4.6 * low[8];
+        if HIGH {
+            out.ra.lower = 100.0 - 4.6 / 8.0 * high[..8].iter().sum::<f64>();
+            out.r9.lower = 100.0 - 4.6 * high[8];
+        } else {
+            out.ra.lower = f64::NEG_INFINITY;
+            out.r9.lower = f64::NEG_INFINITY;
+        }
+    }
+}
+
+/// 2° tristimulus values as an array.
+pub(crate) fn xyz2(t: &Tensor) -> [f64; 3] {
+    let x = t.xyz(Observer::Cie1931);
+    [x.x, x.y, x.z]
+}
