@@ -172,8 +172,10 @@ pub struct Nearest {
 pub struct Reachable {
     /// The metric.
     pub metric: Metric,
-    /// The best value found; the greatest, or the least where only an upper limit is in the way.
+    /// The best value found; the greatest, or the least where the upper limit is in the way.
     pub best: f64,
+    /// True when `best` is the least value.
+    pub least: bool,
     /// No blend goes beyond this, where known.
     pub bound: Option<f64>,
     /// The blend that reaches it.

@@ -26,8 +26,7 @@ type Lane = [f64; CES];
 type Lanes3 = [Lane; 3];
 
 /// CAT02 of CIE 159:2004.
-const CAT02: [[f64; 3]; 3] =
-    [[0.7328, 0.4296, -0.1624], [-0.7036, 1.6975, 0.0061], [0.0030, 0.0136, 0.9834]];
+const CAT02: [[f64; 3]; 3] = [[0.7328, 0.4296, -0.1624], [-0.7036, 1.6975, 0.0061], [0.0030, 0.0136, 0.9834]];
 /// Coefficients of redness, yellowness and the divisor of t in the cone responses (CIE 159:2004).
 const RED: [f64; 3] = [1.0, -12.0 / 11.0, 1.0 / 11.0];
 const YELLOW: [f64; 3] = [1.0 / 9.0, 1.0 / 9.0, -2.0 / 9.0];
@@ -62,7 +61,8 @@ impl Viewing {
         let fl = 0.2 * k4 * 500.0 + 0.1 * (1.0 - k4).powi(2) * 500f64.cbrt();
         let n = 0.2f64;
         let nbb = 0.725 * 5f64.powf(0.2);
-        let hpe = nalgebra::Matrix3::new(0.38971, 0.68898, -0.07868, -0.22981, 1.18340, 0.04641, 0.0, 0.0, 1.0);
+        let hpe =
+            nalgebra::Matrix3::new(0.38971, 0.68898, -0.07868, -0.22981, 1.18340, 0.04641, 0.0, 0.0, 1.0);
         let cat = nalgebra::Matrix3::from_fn(|i, j| CAT02[i][j]);
         let h = hpe * cat.try_inverse().expect("CAT02 is invertible") * fl;
         let cones: [[f64; 3]; 3] = std::array::from_fn(|i| std::array::from_fn(|j| h[(i, j)]));
@@ -322,25 +322,26 @@ impl CesForms {
             (true, true) => self.project::<true, true>(wants, w),
         }
         // Coefficients on the ratios gₘ, then on the free directions.
-        let gather = |co: &Lanes3, weight: Option<&Lane>, slope: &Lanes3, g: &Lanes3, grad: &mut [f64; MOST]| {
-            let mut on = [[0.0; CES]; 3];
-            for m in 0..3 {
-                for i in 0..CES {
-                    let s = h[0][m] * co[0][i] * slope[0][i]
-                        + h[1][m] * co[1][i] * slope[1][i]
-                        + h[2][m] * co[2][i] * slope[2][i];
-                    on[m][i] = omega[m] * s * weight.map_or(1.0, |w| w[i]);
-                }
-            }
-            let by_white: [f64; 3] = std::array::from_fn(|m| dot::<F, CES>(&on[m], &g[m]));
-            for j in 0..d {
-                let mut s = 0.0;
+        let gather =
+            |co: &Lanes3, weight: Option<&Lane>, slope: &Lanes3, g: &Lanes3, grad: &mut [f64; MOST]| {
+                let mut on = [[0.0; CES]; 3];
                 for m in 0..3 {
-                    s += dot::<F, CES>(&on[m], &self.along[j][m]) - by_white[m] * self.white_along[j][m];
+                    for i in 0..CES {
+                        let s = h[0][m] * co[0][i] * slope[0][i]
+                            + h[1][m] * co[1][i] * slope[1][i]
+                            + h[2][m] * co[2][i] * slope[2][i];
+                        on[m][i] = omega[m] * s * weight.map_or(1.0, |w| w[i]);
+                    }
                 }
-                grad[j] = s;
-            }
-        };
+                let by_white: [f64; 3] = std::array::from_fn(|m| dot::<F, CES>(&on[m], &g[m]));
+                for j in 0..d {
+                    let mut s = 0.0;
+                    for m in 0..3 {
+                        s += dot::<F, CES>(&on[m], &self.along[j][m]) - by_white[m] * self.white_along[j][m];
+                    }
+                    grad[j] = s;
+                }
+            };
         gather(&w.rf_co, Some(&self.weight), &w.slope, &w.g, &mut out.rf.grad);
         for g in &mut out.rf.grad[..d] {
             *g = -*g;
@@ -485,7 +486,8 @@ impl CesForms {
         let v = &self.view;
         for i in 0..CES {
             let (a0, a1, a2) = (w.a[0][i], w.a[1][i], w.a[2][i]);
-            let lum = (v.achromatic[0] * a0 + v.achromatic[1] * a1 + v.achromatic[2] * a2 - v.offset).max(1e-9);
+            let lum =
+                (v.achromatic[0] * a0 + v.achromatic[1] * a1 + v.achromatic[2] * a2 - v.offset).max(1e-9);
             w.qq[i] = 0.5 * v.cz * log2::<F>(lum);
             let den = (a0 + a1 + 1.05 * a2).max(1e-6);
             let ca = RED[0] * a0 + RED[1] * a1 + RED[2] * a2;
@@ -561,18 +563,22 @@ impl CesForms {
             let rho = w.mp[i] * ic;
             let along: [f64; 3] = std::array::from_fn(|k| u0 * RED[k] + u1 * YELLOW[k]);
             let across: [f64; 3] = std::array::from_fn(|k| u0 * YELLOW[k] - u1 * RED[k]);
-            let e4k: [f64; 3] = std::array::from_fn(|k| v.cos2 * RED[k] - v.sin2 * YELLOW[k] + 3.8 * along[k]);
-            let mk: [f64; 3] = std::array::from_fn(|k| {
-                0.9 * (e4k[k] * ie4 - DIVISOR[k] * iden) + 0.5 * v.cz * al[k] * ilum
-            });
+            let e4k: [f64; 3] =
+                std::array::from_fn(|k| v.cos2 * RED[k] - v.sin2 * YELLOW[k] + 3.8 * along[k]);
+            let mk: [f64; 3] =
+                std::array::from_fn(|k| 0.9 * (e4k[k] * ie4 - DIVISOR[k] * iden) + 0.5 * v.cz * al[k] * ilum);
             // the shift and its direction
-            let (dj, da, db) =
-                (w.jab[0][i] - self.reference[0][i], w.jab[1][i] - self.reference[1][i], w.jab[2][i] - self.reference[2][i]);
+            let (dj, da, db) = (
+                w.jab[0][i] - self.reference[0][i],
+                w.jab[1][i] - self.reference[1][i],
+                w.jab[2][i] - self.reference[2][i],
+            );
             let n = (dj * dj + da * da + db * db + 1e-24).sqrt();
             let is = 1.0 / n;
             let (ej, ea, eb) = (dj * is, da * is, db * is);
             let (e_in, e_off) = (ea * u0 + eb * u1, eb * u0 - ea * u1);
-            let s: [f64; 3] = std::array::from_fn(|k| ej * j_a * al[k] + p * e_in * mk[k] + rho * e_off * across[k]);
+            let s: [f64; 3] =
+                std::array::from_fn(|k| ej * j_a * al[k] + p * e_in * mk[k] + rho * e_off * across[k]);
             let (g_in, g_off) = if RG {
                 let (va, vb) = (w.pull[0][i], w.pull[1][i]);
                 (va * u0 + vb * u1, vb * u0 - va * u1)
@@ -650,7 +656,8 @@ impl CesForms {
             let (ein, eoff) = (e_in.abs(), e_off.abs());
             let (einh, eoffh) = (ein + eoff * y + ein * bend, eoff + ein * y + eoff * bend);
             for k in 0..3 {
-                let dev = ej.abs() * al[k] * d_ja + (ph * einh * mh[k] - p * ein * mk[k].abs())
+                let dev = ej.abs() * al[k] * d_ja
+                    + (ph * einh * mh[k] - p * ein * mk[k].abs())
                     + (rho_high * eoffh * (across[k].abs() + d_across[k]) - rho * eoff * across[k].abs());
                 half_dev += 0.5 * dev * r[k];
                 below += s[k].max(0.0) * w.kappa[k][i];
@@ -678,7 +685,8 @@ impl CesForms {
                 let high = if keep > 0.0 { with } else { without };
                 w.rf_high[i] = if good > 0.0 { high } else { f64::INFINITY };
                 // Where nothing fits, M′ itself limits the movement.
-                let far = w.mp[i] + m * (1.0 + 0.9 * 4.8 * rc * ie4) * (1.0 + 0.67 * d_lum * ilum) / (1.0 - dd);
+                let far =
+                    w.mp[i] + m * (1.0 + 0.9 * 4.8 * rc * ie4) * (1.0 + 0.67 * d_lum * ilum) / (1.0 - dd);
                 let loose = w.sound[i] > 0.0 && d_den * iden < 0.9;
                 let wild = if loose { far } else { f64::INFINITY };
                 w.stray[i] = if good > 0.0 { move_ab.min(wild) } else { wild };
@@ -688,7 +696,8 @@ impl CesForms {
                     let (mut hd, mut lo, mut hi) = (0.0, 0.0, 0.0);
                     for k in 0..3 {
                         let dev = (ph * ginh * mh[k] - p * gin * mk[k].abs())
-                            + (rho_high * goffh * (across[k].abs() + d_across[k]) - rho * goff * across[k].abs());
+                            + (rho_high * goffh * (across[k].abs() + d_across[k])
+                                - rho * goff * across[k].abs());
                         hd += 0.5 * dev * r[k];
                         lo += gs[k].max(0.0) * w.kappa[k][i];
                         hi += (-gs[k]).max(0.0) * w.kappa[k][i];

@@ -333,7 +333,9 @@ impl Problem {
         if n == 0 {
             return Err(ProblemError::NoEmitters);
         }
-        for (what, len) in [("share bounds", self.bounds.len()), ("wall-plug efficiencies", self.wall_plug.len())] {
+        for (what, len) in
+            [("share bounds", self.bounds.len()), ("wall-plug efficiencies", self.wall_plug.len())]
+        {
             if len != 0 && len != n {
                 return Err(ProblemError::WrongLength { what, expected: n, found: len });
             }
@@ -382,7 +384,9 @@ impl Problem {
             return Err(ProblemError::Target { cct_k: t.cct_k, duv: t.duv });
         }
         match &self.region {
-            Region::Box { cct_k, duv } if !(*cct_k >= 0.0 && *duv >= 0.0 && cct_k.is_finite() && duv.is_finite()) => {
+            Region::Box { cct_k, duv }
+                if !(*cct_k >= 0.0 && *duv >= 0.0 && cct_k.is_finite() && duv.is_finite()) =>
+            {
                 Err(ProblemError::NotFinite { what: "box half-widths" })
             }
             Region::Polygon(p) if p.len() < 3 || p.iter().any(|c| !(c.u.is_finite() && c.v.is_finite())) => {

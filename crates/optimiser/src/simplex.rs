@@ -72,18 +72,6 @@ impl Lp {
         self.m += 1;
     }
 
-    /// Drops rows down to a number.
-    pub(crate) fn truncate(&mut self, rows: usize) {
-        self.m = rows;
-        self.a.truncate(rows * self.stride);
-        self.b.truncate(rows);
-    }
-
-    /// Rows so far.
-    pub(crate) fn rows(&self) -> usize {
-        self.m
-    }
-
     /// The optimal point of the last run that ended [`LpEnd::Optimal`].
     pub(crate) fn point(&self) -> &[f64] {
         &self.x
@@ -242,7 +230,10 @@ mod tests {
         lp.row(&[1.0, 1.0], 1.5);
         assert_eq!(lp.maximise(&[1.0, 2.0], f64::NEG_INFINITY), LpEnd::Optimal(2.5));
         assert_eq!(lp.point(), &[0.5, 1.0]);
-        assert_eq!(lp.maximise(&[1.0, 2.0], 2.9), LpEnd::Below);
+        // a corner of the box already shows that 3.1 is out of reach
+        lp.row(&[1.0, 1.0], 1.2);
+        lp.row(&[0.0, 1.0], 0.1);
+        assert_eq!(lp.maximise(&[1.0, 2.0], 3.1), LpEnd::Below);
         lp.row(&[-1.0, -1.0], -1.6);
         assert_eq!(lp.maximise(&[1.0, 2.0], f64::NEG_INFINITY), LpEnd::Empty);
     }

@@ -12,26 +12,6 @@ use crate::simplex::{Lp, LpEnd};
 pub(crate) struct FreeRow {
     pub(crate) a: Vec<f64>,
     pub(crate) b: f64,
-    pub(crate) what: RowKind,
-}
-
-/// Where a row comes from.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub(crate) enum RowKind {
-    /// An emitter (by its place among the used ones) at its low end.
-    Low(usize),
-    /// An emitter at its high end.
-    High(usize),
-    /// A lower limit on LER (watts per lumen at most).
-    LerLow,
-    /// An upper limit on LER.
-    LerHigh,
-    /// A lower limit on efficacy.
-    EfficacyLow,
-    /// An upper limit on efficacy.
-    EfficacyHigh,
-    /// One of the caller's rows.
-    Caller(usize),
 }
 
 /// A linear condition c·p ≤ b on the watts per unit Y.
@@ -39,7 +19,6 @@ pub(crate) enum RowKind {
 pub(crate) struct WattRow {
     pub(crate) c: Vec<f64>,
     pub(crate) b: f64,
-    pub(crate) what: RowKind,
 }
 
 /// The polytope.
@@ -198,19 +177,15 @@ impl Space {
             if hi - lo <= LOCKED {
                 continue;
             }
-            rows.push(WattRow { c: (0..n).map(|j| lo - f64::from(i == j)).collect(), b: 0.0, what: RowKind::Low(i) });
+            rows.push(WattRow { c: (0..n).map(|j| lo - f64::from(i == j)).collect(), b: 0.0 });
             if hi < 1.0 {
-                rows.push(WattRow {
-                    c: (0..n).map(|j| f64::from(i == j) - hi).collect(),
-                    b: 0.0,
-                    what: RowKind::High(i),
-                });
+                rows.push(WattRow { c: (0..n).map(|j| f64::from(i == j) - hi).collect(), b: 0.0 });
             }
         }
         // locks that turned out dependent may still leave a negative share
         for i in 0..n {
             if input.bounds[i].1 - input.bounds[i].0 <= LOCKED {
-                rows.push(WattRow { c: (0..n).map(|j| -f64::from(i == j)).collect(), b: 1e-9, what: RowKind::Low(i) });
+                rows.push(WattRow { c: (0..n).map(|j| -f64::from(i == j)).collect(), b: 1e-9 });
             }
         }
         let white_rows = rows.len();
@@ -231,7 +206,6 @@ impl Space {
         let to_free = |s: &Space, row: &WattRow| FreeRow {
             a: (0..s.d).map(|j| inner(&row.c, s.direction(j))).collect(),
             b: row.b - inner(&row.c, &s.origin),
-            what: row.what,
         };
         space.rows = rows.iter().map(|r| to_free(&space, r)).collect();
         let mut lp = Lp::default();
@@ -283,7 +257,8 @@ impl Space {
         for &c in &order {
             // a fixed sign, so that the axes do not depend on the library's taste
             let column = eigen.eigenvectors.column(c);
-            let largest = column.iter().copied().fold(0.0, |m: f64, x| if x.abs() > m.abs() + 1e-12 { x } else { m });
+            let largest =
+                column.iter().copied().fold(0.0, |m: f64, x| if x.abs() > m.abs() + 1e-12 { x } else { m });
             let sign = if largest < 0.0 { -1.0 } else { 1.0 };
             for i in 0..n {
                 basis.push(sign * (0..d).map(|j| column[j] * self.basis[j * n + i]).sum::<f64>());
@@ -298,8 +273,10 @@ impl Space {
                     .map(|a| {
                         let column = eigen.eigenvectors.column(order[a]);
                         let sign = {
-                            let largest =
-                                column.iter().copied().fold(0.0, |m: f64, x| if x.abs() > m.abs() + 1e-12 { x } else { m });
+                            let largest = column
+                                .iter()
+                                .copied()
+                                .fold(0.0, |m: f64, x| if x.abs() > m.abs() + 1e-12 { x } else { m });
                             if largest < 0.0 { -1.0 } else { 1.0 }
                         };
                         sign * (0..d).map(|j| column[j] * (c[j] - mean[j])).sum::<f64>()
@@ -311,13 +288,7 @@ impl Space {
 
     fn extent(&mut self, lp: &mut Lp) {
         let d = self.d;
-        let reach: f64 = self
-            .low
-            .iter()
-            .zip(&self.high)
-            .map(|(l, h)| (h - l) * (h - l))
-            .sum::<f64>()
-            .sqrt();
+        let reach: f64 = self.low.iter().zip(&self.high).map(|(l, h)| (h - l) * (h - l)).sum::<f64>().sqrt();
         let (lo, hi) = (vec![-reach; d], vec![reach; d]);
         lp.begin(&lo, &hi);
         for r in &self.rows {

@@ -15,6 +15,10 @@ use colour::{Observer, Reference, Tensor};
 /// Samples 1–9, padded to a multiple of four.
 pub(crate) const TCS: usize = 12;
 
+/// Factor of Y in d = (1.708v + 0.404 − 1.481u)/v once u, v are written as X, Y, Z.
+#[expect(clippy::approx_constant, reason = "CIE 13.3 gives this number; it is not e")]
+const L_OF_Y: f64 = 2.718;
+
 /// A, B, C, Y of each sample.
 type Forms = [[f64; TCS]; 4];
 
@@ -40,7 +44,7 @@ impl TcsForms {
         let (cr, dr) = ((4.0 - ur.u - 10.0 * ur.v) / ur.v, (1.708 * ur.v + 0.404 - 1.481 * ur.u) / ur.v);
         // Of the white only its chromaticity and Y matter; both are fixed.
         let w = space.white;
-        let (ck, dk) = (2.0 * w[2] / w[1], 2.718 - 0.92 * w[0] / w[1] + 0.202 * w[2] / w[1]);
+        let (ck, dk) = (2.0 * w[2] / w[1], L_OF_Y - 0.92 * w[0] / w[1] + 0.202 * w[2] / w[1]);
         let (al, be) = (cr / ck, dr / dk);
         let ky = 100.0 / w[1];
         let of = |t: &Tensor| -> Forms {
@@ -48,7 +52,7 @@ impl TcsForms {
             let mut f = [[0.0; TCS]; 4];
             for i in 0..TCS {
                 let s = xyz[i.min(8)];
-                let l = 2.718 * s.y - 0.92 * s.x + 0.202 * s.z;
+                let l = L_OF_Y * s.y - 0.92 * s.x + 0.202 * s.z;
                 let c = 16.518 * s.y + 2.962 * al * s.z - be * l;
                 f[0][i] = ky * (10.872 * s.y + 0.808 * al * s.z - 4.0 * be * l - ur.u * c);
                 f[1][i] = ky * (5.52 * s.y - ur.v * c);
