@@ -1,9 +1,9 @@
 //! A set's blend: its curve, its numbers, and its rows.
 
-use super::light::screen_colour;
 use super::{ContentKey, Light, WhiteRegion};
 use crate::state::mixing::held::HeldWhite;
 use crate::state::mixing::{Stuck, kinds, rebalance};
+use colour::appearance::{self, Srgb};
 use colour::{Measurement, Observer, Reference, Tensor, UvPrime, Xyz, illuminant, locus, measure};
 use project::{EmitterId, EmitterSet, Project, ShareKind};
 use std::sync::Arc;
@@ -97,10 +97,10 @@ pub struct BlendView {
     pub watts: Option<f64>,
     /// Wavelength of the curve's greatest value, nm.
     pub peak_nm: f64,
-    /// The white as a screen can show it, sRGB.
-    pub srgb: [u8; 3],
-    /// The target as a screen can show it, sRGB.
-    pub target_srgb: [u8; 3],
+    /// The white as a screen can show it.
+    pub srgb: Srgb,
+    /// The target as a screen can show it.
+    pub target_srgb: Srgb,
     held: Option<HeldWhite>,
     numbers: Arc<Numbers>,
 }
@@ -245,8 +245,8 @@ impl BlendView {
             without_wall_plug,
             watts,
             peak_nm: colour::FIRST_NM + peak as f64,
-            srgb: screen_colour(Xyz::from_array(white)),
-            target_srgb: screen_colour(target_uv.xy().xyz(1.0)),
+            srgb: appearance::of_light(&numbers.tensor),
+            target_srgb: appearance::of_chromaticity(target_uv.xy()),
             held,
             numbers,
         }

@@ -319,7 +319,7 @@ fn white_lines(set: &EmitterSet, blend: Option<&BlendView>) -> Vec<LedgerLine> {
     };
     for (line, kind) in [(&mut cct, &CCT), (&mut duv, &DUV)] {
         line.state = if met { LineState::Met } else { LineState::Short };
-        line.bar = Some((margin / (6.0 * super::region::STEP_UV_PRIME)).clamp(-1.0, 1.0));
+        line.bar = Some((margin / (6.0 * colour::tolerance::STEP_RADIUS)).clamp(-1.0, 1.0));
         line.remark.clone_from(&remark);
         let target = if kind.key == "cct" { white.cct_k } else { white.duv };
         line.margin = line.value.map(|value| -(value - target).abs());

@@ -2,8 +2,9 @@
 
 use super::ContentKey;
 use crate::state::mixing::kinds::Weights;
+use colour::appearance::Srgb;
 use colour::spectrum::Features;
-use colour::{Observer, Spectrum, Tensor, UvPrime, Xyz};
+use colour::{Observer, Spectrum, Tensor, UvPrime, appearance};
 use project::{Correction, Emitter};
 
 /// The light of one emitter, scaled to one watt inside 380–780 nm.
@@ -31,8 +32,8 @@ pub struct Light {
     pub weights: Weights,
     /// Part of the measured power that lies outside 380–780 nm.
     pub outside: f64,
-    /// What a screen shows for it, sRGB.
-    pub srgb: [u8; 3],
+    /// What a screen shows for it.
+    pub srgb: Srgb,
     /// What is doubtful about the spectrum, one sentence each.
     pub cautions: Vec<String>,
 }
@@ -65,7 +66,7 @@ impl Light {
                 mean_wavelength_nm: tensor.mean_wavelength_nm(),
             },
             outside: spectrum.share_outside_colour_range(),
-            srgb: screen_colour(xyz),
+            srgb: appearance::of_light(&tensor),
             cautions: spectrum.cautions(),
             curve,
             tensor,
@@ -97,23 +98,4 @@ pub(crate) fn content_key(emitter: &Emitter) -> u64 {
         }
     }
     key.0
-}
-
-/// An sRGB colour (IEC 61966-2-1) of the chromaticity, as bright as it goes: mixed with white until no channel is
-/// negative, then scaled to the greatest channel. An approximation for telling things apart on a screen.
-pub(crate) fn screen_colour(xyz: Xyz) -> [u8; 3] {
-    let [x, y, z] = xyz.to_array().map(|v| v / xyz.y);
-    let mut rgb = [
-        3.2406 * x - 1.5372 * y - 0.4986 * z,
-        -0.9689 * x + 1.8758 * y + 0.0415 * z,
-        0.0557 * x - 0.2040 * y + 1.0570 * z,
-    ];
-    let least = rgb.iter().copied().fold(0.0, f64::min);
-    rgb = rgb.map(|v| v - least);
-    let most = rgb.iter().copied().fold(f64::MIN_POSITIVE, f64::max);
-    rgb.map(|v| {
-        let v = (v / most).clamp(0.0, 1.0);
-        let encoded = if v <= 0.003_130_8 { 12.92 * v } else { 1.055 * v.powf(1.0 / 2.4) - 0.055 };
-        (encoded * 255.0).round() as u8
-    })
 }

@@ -1,12 +1,13 @@
 //! Where the white may lie, as an outline in u′v′ and a test.
 
+use colour::tolerance::{Ellipse, Polygon, Quadrangle, STEP_RADIUS, StepCircle};
 use colour::{CctDuv, UvPrime, locus};
 use project::{Region, WhiteSpec};
 
 /// Farthest from an exact target that still counts as on it: about a tenth of a just noticeable step, in u′v′.
 pub const ON_TARGET_UV_PRIME: f64 = 1e-4;
-/// One step of a u′v′ circle (CIE TN 001:2014).
-pub const STEP_UV_PRIME: f64 = 0.0011;
+/// Straight pieces a curved outline is drawn and tested with.
+const CURVE_PIECES: usize = 180;
 
 /// The region of a white spec, ready to be drawn and tested.
 #[derive(Debug, Clone, PartialEq)]
@@ -19,7 +20,8 @@ pub struct WhiteRegion {
     pub words: String,
     /// Why it cannot be tested, when it cannot (a centre that is in no table).
     pub problem: Option<String>,
-    bounds: Option<(f64, f64)>,
+    polygon: Option<Polygon>,
+    region: Region,
     target_cct_duv: CctDuv,
 }
 
@@ -32,18 +34,18 @@ impl WhiteRegion {
             outline: Vec::new(),
             words: String::new(),
             problem: None,
-            bounds: None,
+            polygon: None,
+            region: white.region.clone(),
             target_cct_duv: CctDuv { cct_k: white.cct_k, duv: white.duv },
         };
         match &white.region {
             Region::Point => "exactly on target".clone_into(&mut region.words),
             Region::Box { cct_k, duv } => {
-                region.bounds = Some((*cct_k, *duv));
                 region.outline = box_outline(white.cct_k, white.duv, *cct_k, *duv);
                 region.words = format!("\u{b1}{cct_k} K, \u{b1}{duv} Duv");
             }
             Region::Circle { steps } => {
-                region.outline = circle_outline(target, steps * STEP_UV_PRIME);
+                region.outline = StepCircle { centre: target }.boundary(*steps, CURVE_PIECES);
                 region.words = format!("{steps}-step circle round the target");
             }
             Region::Polygon(corners) => {
@@ -62,6 +64,14 @@ impl WhiteRegion {
                 });
             }
         }
+        if !region.outline.is_empty() {
+            match Polygon::new(region.outline.clone()) {
+                Ok(polygon) => region.polygon = Some(polygon),
+                // A box without width has no area, but it is still a limit on CCT and Duv.
+                Err(_) if region.box_half_widths().is_some() => {}
+                Err(error) => region.problem = Some(format!("the region is no polygon: {error}")),
+            }
+        }
         region
     }
 
@@ -74,7 +84,10 @@ impl WhiteRegion {
 
     /// Half-widths in K and Duv, when the region is such a box.
     pub fn box_half_widths(&self) -> Option<(f64, f64)> {
-        self.bounds
+        match self.region {
+            Region::Box { cct_k, duv } => Some((cct_k, duv)),
+            _ => None,
+        }
     }
 
     /// How far inside the region a white lies, in u′v′; negative outside. For an exact target: 0.0001 less the
@@ -83,21 +96,26 @@ impl WhiteRegion {
         if self.outline.is_empty() {
             return ON_TARGET_UV_PRIME - white.distance(self.target);
         }
-        let distance = distance_to(&self.outline, white);
-        let inside = match (self.bounds, at) {
-            (Some((cct_k, duv)), Some(at)) => {
-                (at.cct_k - self.target_cct_duv.cct_k).abs() <= cct_k
-                    && (at.duv - self.target_cct_duv.duv).abs() <= duv
+        let margin = self.polygon.as_ref().map_or(0.0, |polygon| polygon.margin(white));
+        // A box is bounded in CCT and Duv; its outline only approximates it.
+        // An ellipse's outline is inscribed.
+        let inside = match &self.region {
+            Region::Box { cct_k, duv } => at.is_some_and(|at| {
+                (at.cct_k - self.target_cct_duv.cct_k).abs() <= *cct_k
+                    && (at.duv - self.target_cct_duv.duv).abs() <= *duv
+            }),
+            Region::Circle { steps } => return steps * STEP_RADIUS - white.distance(self.target),
+            Region::Sdcm { steps, centre } => {
+                Ellipse::iec_60081(centre).is_some_and(|ellipse| ellipse.contains(white.xy(), *steps))
             }
-            (Some(_), None) => false,
-            (None, _) => contains(&self.outline, white),
+            _ => return margin,
         };
-        if inside { distance } else { -distance }
+        if inside { margin.abs() } else { -margin.abs() }
     }
 
     /// Distance from the target in steps of 0.0011.
     pub fn steps_from_target(&self, white: UvPrime) -> f64 {
-        white.distance(self.target) / STEP_UV_PRIME
+        white.distance(self.target) / STEP_RADIUS
     }
 }
 
@@ -110,48 +128,14 @@ fn box_outline(cct_k: f64, duv: f64, half_cct: f64, half_duv: f64) -> Vec<UvPrim
     upper.chain(lower).map(colour::Uv::uv_prime).collect()
 }
 
-fn circle_outline(centre: UvPrime, radius: f64) -> Vec<UvPrime> {
-    (0..96)
-        .map(|k| std::f64::consts::TAU * f64::from(k) / 96.0)
-        .map(|angle| UvPrime { u: centre.u + radius * angle.cos(), v: centre.v + radius * angle.sin() })
-        .collect()
+fn quadrangle_outline(nominal_k: u32) -> Option<Vec<UvPrime>> {
+    let polygon = Quadrangle::nominal(f64::from(nominal_k))?.polygon().ok()?;
+    Some(polygon.vertices().to_vec())
 }
 
-fn quadrangle_outline(_nominal_k: u32) -> Option<Vec<UvPrime>> {
-    None
-}
-
-fn ellipse_outline(_centre: &str, _steps: f64) -> Option<Vec<UvPrime>> {
-    None
-}
-
-/// Whether a point lies inside a polygon (even–odd rule).
-fn contains(outline: &[UvPrime], point: UvPrime) -> bool {
-    let mut inside = false;
-    for (k, a) in outline.iter().enumerate() {
-        let b = outline[(k + 1) % outline.len()];
-        if (a.v > point.v) != (b.v > point.v) && point.u < (b.u - a.u) * (point.v - a.v) / (b.v - a.v) + a.u {
-            inside = !inside;
-        }
-    }
-    inside
-}
-
-/// Distance from a point to the nearest edge of a polygon.
-fn distance_to(outline: &[UvPrime], point: UvPrime) -> f64 {
-    (0..outline.len())
-        .map(|k| {
-            let (a, b) = (outline[k], outline[(k + 1) % outline.len()]);
-            let (du, dv) = (b.u - a.u, b.v - a.v);
-            let length = du * du + dv * dv;
-            let along = if length > 0.0 {
-                (((point.u - a.u) * du + (point.v - a.v) * dv) / length).clamp(0.0, 1.0)
-            } else {
-                0.0
-            };
-            point.distance(UvPrime { u: a.u + along * du, v: a.v + along * dv })
-        })
-        .fold(f64::INFINITY, f64::min)
+fn ellipse_outline(centre: &str, steps: f64) -> Option<Vec<UvPrime>> {
+    let outline = Ellipse::iec_60081(centre)?.boundary(steps, CURVE_PIECES);
+    Some(outline.into_iter().map(colour::Xy::uv_prime).collect())
 }
 
 #[cfg(test)]
@@ -179,6 +163,34 @@ mod tests {
         assert!(region.margin_uv_prime(off(0.0021), None) > 0.0);
         assert!(region.margin_uv_prime(off(0.0023), None) < 0.0);
         assert!((region.steps_from_target(off(0.0022)) - 2.0).abs() < 1e-9);
+    }
+
+    #[test]
+    fn a_quadrangle_and_an_ellipse_are_those_of_their_tables() {
+        // ANSI C78.377-2017, 3000 K: the corner (.4562, .4260) bounds it; its centre is (.4339, .4033).
+        let white = WhiteSpec { region: Region::Quadrangle { nominal_k: 3000 }, ..WhiteSpec::default() };
+        let region = WhiteRegion::of(&white);
+        let at = |x: f64, y: f64| colour::Xy { x, y }.uv_prime();
+        assert!(region.margin_uv_prime(at(0.4339, 0.4033), None) > 0.003);
+        assert!(region.margin_uv_prime(at(0.4570, 0.4265), None) < 0.0);
+        // IEC 60081 F3000: centre (.440, .403), one step reaches .00278 along its long axis.
+        let centre = "F3000".to_owned();
+        let white = WhiteSpec { region: Region::Sdcm { steps: 3.0, centre }, ..WhiteSpec::default() };
+        let region = WhiteRegion::of(&white);
+        assert!(region.problem.is_none() && region.margin_uv_prime(at(0.440, 0.403), None) > 0.0);
+        let long = 3.1 * 0.00278;
+        let (sin, cos) = 53.2_f64.to_radians().sin_cos();
+        assert!(region.margin_uv_prime(at(0.440 + long * cos, 0.403 + long * sin), None) < 0.0);
+    }
+
+    #[test]
+    fn a_centre_or_quadrangle_in_no_table_says_so() {
+        for region in
+            [Region::Quadrangle { nominal_k: 3100 }, Region::Sdcm { steps: 3.0, centre: "F3100".to_owned() }]
+        {
+            let region = WhiteRegion::of(&WhiteSpec { region, ..WhiteSpec::default() });
+            assert!(region.problem.unwrap().contains("3100"));
+        }
     }
 
     #[test]
