@@ -1,1 +1,3 @@
-//! Table of contents to come.
+//! Readers and writers: spectra, projects, blend sheets.
+
+pub mod read;

@@ -1,0 +1,78 @@
+//! Readers of measured spectra: what a file holds, what had to be assumed, what is doubtful and what must be asked.
+//!
+//! [`read_path`] and [`read_bytes`] never panic and never guess silently. They return a [`Reading`] with one of four
+//! [`Outcome`]s, the best reading of every spectrum found, and the sentences a person needs to agree or to overrule it with
+//! [`Answers`]. The rules are written out in `docs/methods/reading.md`.
+//!
+//! Out of scope: nothing is fetched, executed or expanded; spreadsheets, pictures and archives are refused.
+
+mod answers;
+mod columns;
+mod convert;
+mod decode;
+mod dialect;
+mod header;
+mod judge;
+mod number;
+mod path;
+mod reading;
+mod samples;
+mod segments;
+mod sniff;
+mod split;
+mod table;
+mod text;
+mod transposed;
+mod units;
+mod vocabulary;
+
+#[cfg(test)]
+mod tests;
+
+pub use answers::{Answers, AxisUnit, Decimal, Ordinate, Per};
+pub use path::{MAX_FILE_BYTES, read_path};
+pub use reading::{DarkEstimate, Facts, Outcome, QUANTITIES, Question, Raw, ReadSpectrum, Reading};
+
+use reading::Draft;
+use sha2::{Digest, Sha256};
+
+/// Reads the spectra in `bytes`; `file_name` is shown in messages and names spectra without a header.
+///
+/// Runs in time linear in the length of `bytes`. Any input is answered; see [`Outcome`].
+pub fn read_bytes(file_name: &str, bytes: &[u8], answers: &Answers) -> Reading {
+    let sha256 = hex(&Sha256::digest(bytes));
+    let draft = read_draft(file_name, bytes, answers);
+    draft.finish(file_name, sha256)
+}
+
+fn read_draft(file_name: &str, bytes: &[u8], answers: &Answers) -> Draft {
+    if let Some(what) = sniff::foreign_bytes(bytes) {
+        return Draft::refused(None, what);
+    }
+    let decoded = match decode::decode(bytes) {
+        Ok(decoded) => decoded,
+        Err(message) => return Draft::refused(None, message),
+    };
+    if let Some(what) = sniff::foreign_text(&decoded.text) {
+        return Draft::refused(Some(1), what);
+    }
+    text::read_text(stem(file_name), &decoded, answers)
+}
+
+/// The file's name without folder and ending.
+fn stem(file_name: &str) -> &str {
+    let base = file_name.rsplit(['/', '\\']).next().unwrap_or(file_name);
+    match base.rfind('.') {
+        Some(0) | None => base,
+        Some(dot) => &base[..dot],
+    }
+}
+
+fn hex(bytes: &[u8]) -> String {
+    use std::fmt::Write;
+    bytes.iter().fold(String::with_capacity(2 * bytes.len()), |mut text, byte| {
+        // Writing to a String cannot fail.
+        let _ = write!(text, "{byte:02x}");
+        text
+    })
+}

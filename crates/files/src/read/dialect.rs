@@ -1,0 +1,373 @@
+//! How a table is written: its separator and its decimal mark, found by what most lines agree on.
+
+use super::answers::{Answers, Decimal};
+use super::number::{Mark, is_missing, mark};
+use super::split::{Lines, OpenQuote, Separator, cell_list, cells, is_comment};
+
+/// Lines looked at closely; the rest of a long file is sampled.
+const HEAD_LINES: usize = 3000;
+/// No more of a line than this is looked at while choosing.
+const LINE_BYTES: usize = 1 << 15;
+/// Columns whose marks are kept apart.
+const MARK_COLUMNS: usize = 64;
+
+/// Something about the marks that the file leaves open.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) enum Doubt {
+    /// Commas that may be decimal marks or group thousands; the line of the first.
+    Commas(usize),
+    /// Points and commas both mark decimals, from this line on.
+    MarksChange(usize),
+    /// Every comma separates, or every second one is a decimal mark.
+    Pairs(usize),
+}
+
+/// The way a table is written.
+#[derive(Debug, Clone)]
+pub(super) struct Dialect {
+    pub(super) separator: Separator,
+    pub(super) decimal: Decimal,
+    /// Cells in most rows.
+    pub(super) width: usize,
+    pub(super) doubt: Option<Doubt>,
+    /// Cells written with the other decimal mark are read by their own mark.
+    pub(super) either_mark: bool,
+    pub(super) assumptions: Vec<String>,
+}
+
+/// Chooses the dialect of `text`.
+///
+/// # Errors
+/// The line of a quote that never closes.
+pub(super) fn choose(text: &str, answers: &Answers) -> Result<Dialect, OpenQuote> {
+    let sample = sample(text)?;
+    let lines = sample.as_slice();
+    let scores: Vec<(Separator, Score)> =
+        Separator::ALL.into_iter().map(|one| (one, score(lines, one))).collect();
+    let best = |value: fn(&Score) -> usize| {
+        scores
+            .iter()
+            .rev()
+            .max_by_key(|(_, score)| value(score))
+            .map_or((Separator::Tab, 0), |(one, score)| (*one, value(score)))
+    };
+    let (mut separator, rows) = best(|score| score.rows);
+    if rows < 5 {
+        let singles = scores[0].1.singles;
+        let (wide, cells) = best(|score| score.wide);
+        if singles >= 5 && cells < 10 {
+            separator = Separator::Tab;
+        } else if cells >= 5 {
+            separator = wide;
+        } else if rows == 0 {
+            separator = best(|score| score.numbers).0;
+        }
+    }
+    let width = scores.iter().find(|(one, _)| *one == separator).map_or(1, |(_, score)| score.width).max(1);
+    let mut dialect = Dialect {
+        separator,
+        decimal: Decimal::Point,
+        width,
+        doubt: None,
+        either_mark: false,
+        assumptions: Vec::new(),
+    };
+    if separator == Separator::Comma
+        && let Some(pairs) = comma_pairs(lines, width, answers)
+    {
+        match pairs {
+            Pairs::OneColumn => {
+                dialect.separator = Separator::Tab;
+                dialect.width = 1;
+            }
+            Pairs::Certain(line) => {
+                dialect.separator = Separator::CommaPairs;
+                dialect.decimal = Decimal::Comma;
+                dialect.width = width / 2;
+                dialect.assumptions.push(format!(
+                    "Commas separate the columns and mark the decimals too: line {line} has {} numbers of two cells each, as the header names.",
+                    width / 2
+                ));
+                return Ok(dialect);
+            }
+            Pairs::Open(line) => {
+                dialect.separator = Separator::CommaPairs;
+                dialect.decimal = Decimal::Comma;
+                dialect.width = width / 2;
+                dialect.doubt = Some(Doubt::Pairs(line));
+                return Ok(dialect);
+            }
+        }
+    }
+    decide_decimal(text, &mut dialect, answers)?;
+    Ok(dialect)
+}
+
+/// The first lines that are not blank, and some of the later ones.
+fn sample(text: &str) -> Result<Vec<(usize, &str)>, OpenQuote> {
+    let mut sample = Vec::new();
+    let mut later = 0_usize;
+    for line in Lines::new(text) {
+        let (number, line) = line?;
+        if sample.len() >= HEAD_LINES {
+            later += 1;
+            if !later.is_multiple_of(1000) || sample.len() >= HEAD_LINES + 2000 {
+                continue;
+            }
+        }
+        if line.trim().is_empty() || is_comment(line) {
+            continue;
+        }
+        let mut end = line.len().min(LINE_BYTES);
+        while !line.is_char_boundary(end) {
+            end -= 1;
+        }
+        sample.push((number, &line[..end]));
+    }
+    Ok(sample)
+}
+
+#[derive(Debug, Clone, Copy, Default)]
+struct Score {
+    /// Lines of two or more cells, all numbers or marks for none.
+    rows: usize,
+    /// The commonest number of cells of such lines.
+    width: usize,
+    /// Lines that are one number.
+    singles: usize,
+    /// Numbers in long lines with at most two words: a table lying on its side.
+    wide: usize,
+    /// Numbers altogether.
+    numbers: usize,
+}
+
+fn score(lines: &[(usize, &str)], separator: Separator) -> Score {
+    let mut score = Score::default();
+    let mut widths: Vec<(usize, usize)> = Vec::new();
+    for (_, line) in lines {
+        let (mut numbers, mut missing, mut words) = (0, 0, 0);
+        cells(line, separator, |cell| {
+            if mark(cell, separator.spaces_group()).is_some() {
+                numbers += 1;
+            } else if is_missing(cell) {
+                missing += 1;
+            } else {
+                words += 1;
+            }
+            true
+        });
+        score.numbers += numbers;
+        if words == 0 && numbers == 1 && missing == 0 {
+            score.singles += 1;
+        }
+        if words <= 2 && numbers >= 5 {
+            score.wide += numbers;
+        }
+        let count = numbers + missing;
+        if words == 0 && numbers >= 1 && count >= 2 {
+            score.rows += 1;
+            match widths.iter().position(|(width, _)| *width == count) {
+                Some(index) => widths[index].1 += 1,
+                None if widths.len() < 64 => widths.push((count, 1)),
+                None => {}
+            }
+        }
+    }
+    score.width = widths.iter().max_by_key(|(width, times)| (*times, *width)).map_or(0, |(width, _)| *width);
+    score
+}
+
+enum Pairs {
+    /// One column of numbers with decimal commas.
+    OneColumn,
+    /// Certain by the header; line of the first row.
+    Certain(usize),
+    /// Not decided by anything in the file.
+    Open(usize),
+}
+
+/// Whether commas in `380,0,0,123` are both separators and decimal marks.
+fn comma_pairs(lines: &[(usize, &str)], width: usize, answers: &Answers) -> Option<Pairs> {
+    if answers.decimal == Some(Decimal::Point) || !width.is_multiple_of(2) {
+        return None;
+    }
+    let digits = |cell: &str| !cell.is_empty() && cell.bytes().all(|byte| byte.is_ascii_digit());
+    let (mut rows, mut fitting, mut leading_zero, mut first) = (0, 0, 0, None);
+    let mut firsts = Vec::new();
+    for (number, line) in lines {
+        if line.contains('"') {
+            continue;
+        }
+        let list = cell_list(line, Separator::Comma);
+        if list.len() != width || !list.iter().all(|cell| mark(cell, false).is_some()) {
+            continue;
+        }
+        rows += 1;
+        first = first.or(Some(*number));
+        firsts.push(list[0].to_owned());
+        let fits = list.chunks(2).all(|pair| {
+            let fraction = pair[1].split(['e', 'E']).next().unwrap_or("");
+            digits(pair[0].trim_start_matches(['-', '+'])) && digits(fraction)
+        });
+        fitting += usize::from(fits);
+        leading_zero += usize::from(list.chunks(2).any(|pair| pair[1].len() > 1 && pair[1].starts_with('0')));
+    }
+    let first = first?;
+    if rows < 5 || fitting < rows {
+        return None;
+    }
+    firsts.dedup();
+    let repeated = firsts.len() * 2 < rows;
+    if width == 2 {
+        return (repeated || answers.decimal == Some(Decimal::Comma)).then_some(Pairs::OneColumn);
+    }
+    let header = lines
+        .iter()
+        .rev()
+        .find(|(number, line)| *number < first && !line.trim().is_empty())
+        .map(|(_, line)| cell_list(line, Separator::Comma));
+    if answers.decimal == Some(Decimal::Comma)
+        || header.as_ref().is_some_and(|cells| cells.len() == width / 2 && !cells.is_empty())
+            && (leading_zero > 0 || repeated || width > 2)
+    {
+        return Some(Pairs::Certain(first));
+    }
+    if header.is_some_and(|cells| cells.len() == width) {
+        return None;
+    }
+    (leading_zero > 0 || repeated).then_some(Pairs::Open(first))
+}
+
+#[derive(Debug, Clone, Copy, Default)]
+struct Marks {
+    plain: usize,
+    point: usize,
+    comma: usize,
+    perhaps_point: usize,
+    perhaps_comma: usize,
+    point_groups: usize,
+    comma_groups: usize,
+    first_point: usize,
+    first_comma: usize,
+    first_perhaps: usize,
+}
+
+fn decide_decimal(text: &str, dialect: &mut Dialect, answers: &Answers) -> Result<(), OpenQuote> {
+    let columns = count_marks(text, dialect)?;
+    let total = |value: fn(&Marks) -> usize| columns.iter().map(value).sum::<usize>();
+    let (point, comma) = (total(|m| m.point), total(|m| m.comma));
+    let (perhaps_point, perhaps_comma) = (total(|m| m.perhaps_point), total(|m| m.perhaps_comma));
+    let first =
+        |value: fn(&Marks) -> usize| columns.iter().map(value).filter(|&line| line > 0).min().unwrap_or(1);
+    if let Some(decimal) = answers.decimal {
+        dialect.decimal = decimal;
+        dialect.either_mark = true;
+        return Ok(());
+    }
+    dialect.decimal = if comma > point { Decimal::Comma } else { Decimal::Point };
+    if point.min(comma) >= 2 {
+        // The later of the two beginnings is where the marks change.
+        let change = first(|m| m.first_point).max(first(|m| m.first_comma));
+        dialect.doubt = Some(Doubt::MarksChange(change));
+        dialect.either_mark = true;
+        return Ok(());
+    }
+    if point > comma {
+        // 999.5 and 1,001 in one column: grouped thousands, unless the mark changes.
+        let same =
+            columns.iter().find(|m| m.point > m.point_groups && m.perhaps_comma > 0 && m.point_groups == 0);
+        if let Some(column) = same {
+            dialect.doubt = Some(Doubt::Commas(column.first_perhaps));
+        } else if perhaps_comma > 0 {
+            dialect.assumptions.push("Points mark the decimals, so commas group thousands.".into());
+        }
+    } else if comma > 0 {
+        let same =
+            columns.iter().find(|m| m.comma > m.comma_groups && m.perhaps_point > 0 && m.comma_groups == 0);
+        if let Some(column) = same {
+            dialect.doubt = Some(Doubt::MarksChange(column.first_perhaps.max(1)));
+        } else if perhaps_point > 0 {
+            dialect.assumptions.push("Commas mark the decimals, so points group thousands.".into());
+        }
+    } else if perhaps_comma > 0 {
+        let axis = columns.first().copied().unwrap_or_default();
+        if axis.perhaps_comma > 0 && dialect.width > 1 {
+            dialect.decimal = Decimal::Comma;
+            dialect
+                .assumptions
+                .push("Commas mark the decimals: as thousands the axis would make no sense.".into());
+        } else if axis.perhaps_point > 0 && dialect.width > 1 {
+            dialect
+                .assumptions
+                .push("Points mark the decimals of the axis, so commas group thousands.".into());
+        } else {
+            let plain = columns.iter().any(|m| m.perhaps_comma > 0 && m.plain > 0);
+            dialect.decimal = if plain { Decimal::Point } else { Decimal::Comma };
+            dialect.doubt = Some(Doubt::Commas(first(|m| m.first_perhaps)));
+        }
+    } else if perhaps_point > 0 {
+        dialect.decimal = Decimal::Point;
+    }
+    Ok(())
+}
+
+/// Counts the marks of every column over all rows of numbers.
+fn count_marks(text: &str, dialect: &Dialect) -> Result<Vec<Marks>, OpenQuote> {
+    let mut columns: Vec<Marks> = vec![Marks::default(); dialect.width.clamp(1, MARK_COLUMNS)];
+    let last = columns.len() - 1;
+    // Without a comma inside cells there is nothing to decide.
+    if !dialect.separator.leaves_commas() && !text.contains('"') || !text.contains(',') {
+        return Ok(columns);
+    }
+    let mut row: Vec<(Mark, bool)> = Vec::new();
+    for line in Lines::new(text) {
+        let (number, line) = line?;
+        if line.len() < 2 || is_comment(line) {
+            continue;
+        }
+        row.clear();
+        let mut words = false;
+        cells(line, dialect.separator, |cell| {
+            match mark(cell, dialect.separator.spaces_group()) {
+                Some(mark) => row.push((
+                    mark,
+                    cell.contains(',') && cell.contains('.') || cell.matches([',', '.']).count() > 1,
+                )),
+                None if is_missing(cell) => row.push((Mark::None, false)),
+                None => words = true,
+            }
+            !words && row.len() < 4096
+        });
+        if words || row.len() < dialect.width.min(2) {
+            continue;
+        }
+        for (index, (mark, groups)) in row.iter().enumerate() {
+            let column = &mut columns[index.min(last)];
+            let groups = usize::from(*groups);
+            let note = |line: &mut usize| {
+                if *line == 0 {
+                    *line = number;
+                }
+            };
+            match mark {
+                Mark::None => column.plain += 1,
+                Mark::Point => {
+                    column.point += 1;
+                    column.point_groups += groups;
+                    note(&mut column.first_point);
+                }
+                Mark::Comma => {
+                    column.comma += 1;
+                    column.comma_groups += groups;
+                    note(&mut column.first_comma);
+                }
+                Mark::PerhapsPoint => column.perhaps_point += 1,
+                Mark::PerhapsComma => {
+                    column.perhaps_comma += 1;
+                    note(&mut column.first_perhaps);
+                }
+            }
+        }
+    }
+    Ok(columns)
+}

@@ -1,0 +1,1 @@
+//! Facts about what files say.
