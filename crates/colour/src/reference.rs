@@ -3,9 +3,13 @@
 use crate::appearance_model::{CAT02, cam02_ucs};
 use crate::chromaticity::Uv;
 use crate::illuminant::{DaylightBranch, daylight_grid_on, planckian_grid};
+use crate::kernel::Arithmetic;
 use crate::observer::Observer;
 use crate::tensor::Tensor;
 use crate::tensor::column::{CES_LANES, TCS_LANES};
+
+#[path = "reference_table.rs"]
+mod table;
 
 /// Both rendering references of one CCT.
 ///
@@ -50,11 +54,16 @@ fn blended_grid(cct_k: f64) -> Vec<f64> {
 }
 
 impl Reference {
-    /// Both references of a CCT.
+    /// Both references of a CCT, from a table over CCT that moves no index by 0.001.
     ///
-    /// *Valid range:* 1000–20 000 K.
+    /// *Valid range:* 1000–20 000 K; outside, as [`Self::exact`].
     pub fn at(cct_k: f64) -> Reference {
-        Reference::exact(cct_k)
+        Reference::at_with(cct_k, Arithmetic::Dispatched)
+    }
+
+    /// [`Self::at`] with a chosen instruction set.
+    pub fn at_with(cct_k: f64, arithmetic: Arithmetic) -> Reference {
+        table::interpolated(cct_k, arithmetic).unwrap_or_else(|| Reference::exact(cct_k))
     }
 
     /// Both references of a CCT by direct summation.
@@ -122,6 +131,7 @@ impl Reference {
 }
 
 /// Bin of 22.5° by hue angle of the reference a′, b′, without an arctangent.
+#[inline(always)]
 fn hue_bins(ces_jab: &[f64; 3 * CES_LANES]) -> [u8; CES_LANES] {
     // tan 22.5° and tan 67.5°.
     const LOW: f64 = std::f64::consts::SQRT_2 - 1.0;

@@ -7,6 +7,7 @@
 
 use crate::appearance_model::CAT02;
 use crate::chromaticity::Xyz;
+use crate::kernel::{Arithmetic, Lanewise, fma};
 use crate::observer::Observer;
 use crate::spectrum::Spectrum;
 use crate::{FIRST_NM, GRID_POINTS, PHOTOPIC_EFFICACY_LM_PER_W, SCOTOPIC_EFFICACY_LM_PER_W, tables};
@@ -74,7 +75,7 @@ impl std::fmt::Debug for Tensor {
 }
 
 /// Weights: row λ holds what one unit of power at λ adds to every column.
-static WEIGHTS: LazyLock<Vec<[f64; COUNT]>> = LazyLock::new(|| {
+static WEIGHTS: LazyLock<Vec<WeightRow>> = LazyLock::new(|| {
     let mut rows = vec![[0.0; COUNT]; GRID_POINTS];
     let mut set = |at: usize, values: &[f64]| {
         for (row, value) in rows.iter_mut().zip(values) {
@@ -115,8 +116,53 @@ static WEIGHTS: LazyLock<Vec<[f64; COUNT]>> = LazyLock::new(|| {
             }
         }
     }
-    rows
+    rows.into_iter().map(WeightRow).collect()
 });
+
+/// sums += Σ factor · row.
+struct Accumulate<'a, R> {
+    factors: &'a [f64],
+    rows: &'a [R],
+    sums: &'a mut [f64; COUNT],
+}
+
+impl<R: Column> Lanewise for Accumulate<'_, R> {
+    type Output = ();
+
+    #[inline(always)]
+    fn run<const FMA: bool>(self) {
+        for (factor, row) in self.factors.iter().zip(self.rows) {
+            if *factor != 0.0 {
+                let row = row.column();
+                for lane in 0..COUNT {
+                    self.sums[lane] = fma::<FMA>(*factor, row[lane], self.sums[lane]);
+                }
+            }
+        }
+    }
+}
+
+/// Access for [`Accumulate`], kept off the public face.
+trait Column {
+    fn column(&self) -> &[f64; COUNT];
+}
+
+impl Column for Tensor {
+    #[inline(always)]
+    fn column(&self) -> &[f64; COUNT] {
+        &self.values
+    }
+}
+
+/// What one unit of power at one wavelength adds to every column.
+struct WeightRow([f64; COUNT]);
+
+impl Column for WeightRow {
+    #[inline(always)]
+    fn column(&self) -> &[f64; COUNT] {
+        &self.0
+    }
+}
 
 impl Tensor {
     /// The tensor of a spectrum, by way of [`Spectrum::on_colour_grid`].
@@ -127,13 +173,7 @@ impl Tensor {
     /// The tensor of power per nm at 380, 381 … 780 nm. Values beyond the 401st are ignored, missing ones are zero.
     pub fn of_grid(power_per_nm: &[f64]) -> Tensor {
         let mut values = Box::new([0.0; COUNT]);
-        for (power, row) in power_per_nm.iter().zip(WEIGHTS.iter()) {
-            if *power != 0.0 {
-                for (sum, weight) in values.iter_mut().zip(row) {
-                    *sum += power * weight;
-                }
-            }
-        }
+        Arithmetic::Dispatched.run(Accumulate { factors: power_per_nm, rows: &WEIGHTS, sums: &mut values });
         Tensor { values }
     }
 
@@ -275,11 +315,11 @@ impl TensorSet {
     /// The blend Σ shareᵢ · emitterᵢ. Shares beyond the last emitter are ignored, missing ones are zero.
     pub fn blend(&self, shares: &[f64]) -> Tensor {
         let mut blend = Tensor::dark();
-        for (tensor, share) in self.columns.iter().zip(shares) {
-            if *share != 0.0 {
-                blend.add_scaled(tensor, *share);
-            }
-        }
+        Arithmetic::Dispatched.run(Accumulate {
+            factors: shares,
+            rows: &self.columns,
+            sums: &mut blend.values,
+        });
         blend
     }
 

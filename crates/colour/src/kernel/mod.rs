@@ -18,8 +18,9 @@ use crate::reference::Reference;
 use crate::tensor::column::{self, CES_LANES, COUNT, TCS_LANES};
 use crate::tensor::{Tensor, TensorSet, sample_xyz};
 use crate::{Xyz, appearance_model::CAT02};
-use dispatch::Lanewise;
+pub(crate) use dispatch::Lanewise;
 use lanes::{Lanes, blend, dot, sum99};
+pub(crate) use maths::fma;
 
 const TCS_COUNT: usize = 3 * TCS_LANES;
 const CES_COUNT: usize = 3 * CES_LANES;
