@@ -2,8 +2,9 @@
 
 use crate::alpha_opic::melanopic_der;
 use crate::chromaticity::{Uv, UvPrime, Xy};
-use crate::cri::{Cri, GREATEST_REFERENCE_DISTANCE_UV, cri};
-use crate::fidelity::{Fidelity, HUE_BINS, fidelity};
+use crate::cri::{Cri, GREATEST_REFERENCE_DISTANCE_UV, cri_with};
+use crate::fidelity::{Fidelity, HUE_BINS, fidelity_with};
+use crate::kernel::Arithmetic;
 use crate::locus::{self, CctDuv, GREATEST_DUV};
 use crate::observer::Observer;
 use crate::photobiology::blue_light_efficacy_w_per_lm;
@@ -95,16 +96,17 @@ pub fn measure_spectrum(spectrum: &Spectrum) -> Measurement {
 
 /// Every number of a light, against the reference of its own CCT.
 pub fn measure(light: &Tensor) -> Measurement {
-    measure_against(light, None)
+    measure_with(light, None, Arithmetic::Dispatched)
 }
 
 /// Every number of a light, with the rendering numbers against a fixed reference (a solve at an exact white uses
 /// that of the target CCT, so that rounding cannot flip the switch at 5000 K).
 pub fn measure_at(light: &Tensor, reference: &Reference) -> Measurement {
-    measure_against(light, Some(reference))
+    measure_with(light, Some(reference), Arithmetic::Dispatched)
 }
 
-fn measure_against(light: &Tensor, fixed: Option<&Reference>) -> Measurement {
+/// [`measure`] or [`measure_at`] with a chosen instruction set.
+pub fn measure_with(light: &Tensor, fixed: Option<&Reference>, arithmetic: Arithmetic) -> Measurement {
     let mut out = Measurement {
         x: 0.0,
         y: 0.0,
@@ -151,12 +153,12 @@ fn measure_against(light: &Tensor, fixed: Option<&Reference>) -> Measurement {
     let reference = match fixed {
         Some(reference) => reference,
         None => {
-            own = Reference::at(found.cct_k);
+            own = Reference::at_with(found.cct_k, arithmetic);
             &own
         }
     };
-    out.fill_cri(&cri(light, reference));
-    out.fill_fidelity(&fidelity(light, reference));
+    out.fill_cri(&cri_with(light, reference, arithmetic));
+    out.fill_fidelity(&fidelity_with(light, reference, arithmetic));
     out
 }
 

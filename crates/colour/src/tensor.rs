@@ -314,12 +314,13 @@ impl TensorSet {
 
     /// The blend Σ shareᵢ · emitterᵢ. Shares beyond the last emitter are ignored, missing ones are zero.
     pub fn blend(&self, shares: &[f64]) -> Tensor {
+        self.blend_with(shares, Arithmetic::Dispatched)
+    }
+
+    /// [`Self::blend`] with a chosen instruction set.
+    pub fn blend_with(&self, shares: &[f64], arithmetic: Arithmetic) -> Tensor {
         let mut blend = Tensor::dark();
-        Arithmetic::Dispatched.run(Accumulate {
-            factors: shares,
-            rows: &self.columns,
-            sums: &mut blend.values,
-        });
+        arithmetic.run(Accumulate { factors: shares, rows: &self.columns, sums: &mut blend.values });
         blend
     }
 
