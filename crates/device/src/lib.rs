@@ -6,18 +6,53 @@
 //! | [`curve`] | measured tables over current |
 //! | [`roll_off`] | published EQE roll-off formulas and their fits |
 //! | [`out_coupling`] | the factor on outgoing light |
+//! | [`light`], [`shares`] | the light of an emitter; the three kinds of share |
+//! | [`working`] | everything a sheet gives at one current |
+//! | [`conversion`] | pumps and converters |
+//! | [`build`] | a build: from shares to a recipe, from fabrication numbers back |
+//! | [`side_by_side`], [`series_stack`], [`shared_zone`], [`packages`] | the build forms |
+//! | [`calibration`] | the user's runs behind a shared zone |
+//! | [`whole_numbers`] | closest white of whole units |
+//! | [`power`] | device electrical power as an objective, with bounds |
+//! | [`made`], [`recipe`], [`bands`] | fabrication numbers, what a recipe says, allowed bands |
+//! | [`form`], [`channels`] | what the forms have in common |
 //! | [`units`] | physical constants |
 //! | [`error`] | errors and notices |
 //!
 //! Out of scope: finding the blend (the optimiser does), files, pictures. Nothing here reads a clock, a file
 //! or a global.
 
+mod allocation;
+pub mod bands;
+pub mod build;
+pub mod calibration;
+pub mod channels;
+pub mod conversion;
 pub mod curve;
 pub mod error;
+pub mod form;
+pub mod light;
+pub mod made;
 pub mod out_coupling;
+pub mod packages;
+pub mod power;
+pub mod recipe;
 pub mod roll_off;
+pub mod series_stack;
+pub mod shared_zone;
+pub mod shares;
 pub mod sheet;
+pub mod side_by_side;
 pub mod units;
+pub mod whole_numbers;
+pub mod working;
 
+pub use build::{Build, FormSettings, Level};
 pub use error::{DeviceError, Notice};
+pub use form::BuildForm;
+pub use light::{DeviceEmitter, EmitterLight};
+pub use made::{Made, Quantities, Quantity, QuantityKind};
+pub use recipe::{Recipe, RecipeEmitter};
+pub use shares::ShareKind;
 pub use sheet::Sheet;
+pub use working::{Characteristic, Working};
