@@ -274,7 +274,8 @@ fn exchange(items: &[&Item], demand: &[f64], budget: f64, mut points: Vec<Point>
                     let other = (left > 0.0).then(|| items[j].cheapest_within(left)).flatten()?;
                     Some((point, other, demand[i] * point.cost + demand[j] * other.cost))
                 };
-                let mut best = (points[i], points[j], demand[i] * points[i].cost + demand[j] * points[j].cost);
+                let mut best =
+                    (points[i], points[j], demand[i] * points[i].cost + demand[j] * points[j].cost);
                 let mut at = None;
                 for (k, point) in items[i].grid.iter().enumerate() {
                     if let Some(found) = pair(*point).filter(|found| found.2 < best.2) {

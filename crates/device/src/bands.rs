@@ -85,7 +85,7 @@ pub fn bands(
     let furthest = FURTHEST_FACTOR.ln();
     let mut alone = Vec::with_capacity(numbers.len());
     for (index, &value) in target.iter().enumerate() {
-        let mut edge = |sign: f64| -> (f64, bool) {
+        let mut edge = |sign: f64| -> Side {
             if value <= 0.0 {
                 return (0.0, true);
             }
@@ -110,7 +110,7 @@ pub fn bands(
         };
         alone.push((edge(-1.0), edge(1.0)));
     }
-    let influences = |side: &(f64, bool)| !(side.1 && side.0 >= furthest);
+    let influences = |side: &Side| !(side.1 && side.0 >= furthest);
     let counted: Vec<usize> = (0..numbers.len())
         .filter(|&k| target[k] > 0.0 && (influences(&alone[k].0) || influences(&alone[k].1)))
         .collect();
@@ -161,11 +161,14 @@ pub fn bands(
     })
 }
 
+/// How far a number goes one way, as a logarithm, and whether it stops for another reason than the region.
+type Side = (f64, bool);
+
 /// The corners that move the white furthest, to first order, in evenly spread directions.
 fn extreme_corners(
     target: &[f64],
     counted: &[usize],
-    alone: &[((f64, bool), (f64, bool))],
+    alone: &[(Side, Side)],
     model: &impl Fn(&[f64]) -> Option<Outcome>,
 ) -> Vec<Vec<bool>> {
     let white = |values: &[f64]| model(values).map(|outcome| outcome.white);

@@ -16,8 +16,8 @@ use crate::power::{LeastPower, PowerModel};
 use crate::recipe::{Details, Recipe, RecipeEmitter};
 use crate::series_stack::{self, Dimming, SeriesStack};
 use crate::shared_zone::SharedZone;
-use crate::side_by_side::{SideBySide, StripeCurrents};
 use crate::shares;
+use crate::side_by_side::{SideBySide, StripeCurrents};
 use crate::units::watts_per_photon_current;
 use crate::working::Characteristic;
 
@@ -199,7 +199,9 @@ impl Build {
             FormSettings::SharedZone(form) => {
                 form.realise(&context, &demands).map(|r| wrap(r, Quantities::SharedZone))
             }
-            FormSettings::Packages(form) => form.realise(&context, &demands).map(|r| wrap(r, Quantities::Packages)),
+            FormSettings::Packages(form) => {
+                form.realise(&context, &demands).map(|r| wrap(r, Quantities::Packages))
+            }
         };
         let realised = match realised {
             Ok(realised) => realised,
@@ -392,9 +394,8 @@ impl Build {
                 entry.optical_depth = depth;
                 entry.loading_percent = depth.and_then(|depth| layer.loading_percent(depth));
             }
-            assumptions.push(format!(
-                "over {pump}: one pass outward, spectra keep their shape when absorbed"
-            ));
+            assumptions
+                .push(format!("over {pump}: one pass outward, spectra keep their shape when absorbed"));
         }
         let lumens = lumens_of(context, radiant);
         let level = absolute.then_some(lumens);
@@ -409,7 +410,8 @@ impl Build {
             let emitter = &context.emitters[context.channels.driven[channel]];
             missing.extend(characteristic.missing().iter().map(|m| format!("{}: {m}", emitter.name)));
             if self.basis() == Basis::PanelArea {
-                assumptions.extend(emitter.sheet.assumptions().iter().map(|a| format!("{}: {a}", emitter.name)));
+                assumptions
+                    .extend(emitter.sheet.assumptions().iter().map(|a| format!("{}: {a}", emitter.name)));
             }
         }
         Ok(Recipe {
@@ -436,7 +438,13 @@ impl Build {
         })
     }
 
-    fn state_power(&self, recipe: &mut Recipe, context: &Context<'_>, radiant: &[f64], electrical: Option<f64>) {
+    fn state_power(
+        &self,
+        recipe: &mut Recipe,
+        context: &Context<'_>,
+        radiant: &[f64],
+        electrical: Option<f64>,
+    ) {
         let total: f64 = radiant.iter().sum();
         let lumens = lumens_of(context, radiant);
         recipe.efficacy_lm_per_w = electrical.filter(|watts| *watts > 0.0).map(|watts| lumens / watts);
@@ -449,7 +457,8 @@ impl Build {
             }
             Basis::Whole => {
                 recipe.radiant_exitance_w_per_m2 = self.area_m2.map(|area| total / area);
-                recipe.electrical_power_w_per_m2 = electrical.zip(self.area_m2).map(|(watts, area)| watts / area);
+                recipe.electrical_power_w_per_m2 =
+                    electrical.zip(self.area_m2).map(|(watts, area)| watts / area);
                 recipe.electrical_power_w = electrical;
             }
         }
@@ -588,7 +597,11 @@ impl Build {
     ///
     /// # Errors
     /// As [`Build::predict`] at the numbers themselves.
-    pub fn sensitivities(&self, emitters: &[DeviceEmitter], made: &Made) -> Result<Vec<Sensitivity>, DeviceError> {
+    pub fn sensitivities(
+        &self,
+        emitters: &[DeviceEmitter],
+        made: &Made,
+    ) -> Result<Vec<Sensitivity>, DeviceError> {
         let centre = self.predict(emitters, made)?;
         let at = |quantity: Quantity, value: f64| -> Option<(f64, f64, f64)> {
             let moved = self.predict(emitters, &made.with(quantity, value)).ok()?;
@@ -596,7 +609,11 @@ impl Build {
             Some((moved.u_prime?, moved.v_prime?, lumens.unwrap_or(f64::NAN)))
         };
         let lumens = centre.luminous_exitance_lm_per_m2.or(centre.luminous_flux_lm);
-        let middle = (centre.u_prime.unwrap_or(f64::NAN), centre.v_prime.unwrap_or(f64::NAN), lumens.unwrap_or(f64::NAN));
+        let middle = (
+            centre.u_prime.unwrap_or(f64::NAN),
+            centre.v_prime.unwrap_or(f64::NAN),
+            lumens.unwrap_or(f64::NAN),
+        );
         let sensitivity = |(quantity, value): (Quantity, f64)| {
             let up = at(quantity, value * 1.005);
             let down = at(quantity, value * 0.995);

@@ -275,8 +275,9 @@ fn within(
 /// 97.5 % quantile of Student's t. *Source*: standard table; beyond 30 degrees `1.96 + 2.37/f`, from memory.
 fn student_97_5(degrees_of_freedom: usize) -> f64 {
     const TABLE: [f64; 30] = [
-        12.706, 4.303, 3.182, 2.776, 2.571, 2.447, 2.365, 2.306, 2.262, 2.228, 2.201, 2.179, 2.160, 2.145, 2.131,
-        2.120, 2.110, 2.101, 2.093, 2.086, 2.080, 2.074, 2.069, 2.064, 2.060, 2.056, 2.052, 2.048, 2.045, 2.042,
+        12.706, 4.303, 3.182, 2.776, 2.571, 2.447, 2.365, 2.306, 2.262, 2.228, 2.201, 2.179, 2.160, 2.145,
+        2.131, 2.120, 2.110, 2.101, 2.093, 2.086, 2.080, 2.074, 2.069, 2.064, 2.060, 2.056, 2.052, 2.048,
+        2.045, 2.042,
     ];
     match degrees_of_freedom {
         0 => f64::INFINITY,
@@ -360,7 +361,10 @@ mod tests {
         let next = fit.next_run(&wanted);
         let x = fit.regressors(&wanted);
         for candidate in [setting(0.2, 5.0), setting(0.8, 12.0), setting(0.2, 12.0), wanted] {
-            assert!(fit.gain(&x, &fit.regressors(&next)) >= fit.gain(&x, &fit.regressors(&candidate)) * (1.0 - 1e-9));
+            assert!(
+                fit.gain(&x, &fit.regressors(&next))
+                    >= fit.gain(&x, &fit.regressors(&candidate)) * (1.0 - 1e-9)
+            );
         }
         let outside = setting(1.2, 8.0);
         assert_eq!(fit.next_run(&outside), outside);

@@ -97,7 +97,9 @@ impl Conversion {
                     expected: "a fraction above 0 and at most 1 is expected",
                 });
             }
-            if let Some(&value) = layer.relative_absorption.iter().map(|(_, s)| s).find(|s| !(s.is_finite() && **s >= 0.0)) {
+            if let Some(&value) =
+                layer.relative_absorption.iter().map(|(_, s)| s).find(|s| !(s.is_finite() && **s >= 0.0))
+            {
                 return Err(DeviceError::BadSetting {
                     what: "a converter's relative absorption",
                     value,
@@ -147,9 +149,10 @@ impl Conversion {
         }
         if leak <= 0.0 && bands.iter().any(|band| *band > 0.0) {
             return Err(DeviceError::Unreachable {
-                reason: "converted light without any leaking pump light would need an infinitely deep layer: \
+                reason:
+                    "converted light without any leaking pump light would need an infinitely deep layer: \
                          give the pump a share above zero"
-                    .to_owned(),
+                        .to_owned(),
             });
         }
         let mut leak = leak;
@@ -163,7 +166,8 @@ impl Conversion {
                     .sum();
                 leak * depth.exp_m1() + inner
             };
-            let depth = if wanted > 0.0 { rising_root(absorbed, wanted, (wanted / leak).ln_1p()) } else { 0.0 };
+            let depth =
+                if wanted > 0.0 { rising_root(absorbed, wanted, (wanted / leak).ln_1p()) } else { 0.0 };
             depths[outer] = depth;
             leak *= depth.exp();
             for inner in 0..outer {
@@ -245,7 +249,11 @@ mod tests {
     fn depths_are_found_again_from_what_leaves() {
         let conversion = Conversion {
             pump: 0,
-            layers: vec![layer(1, 0.95, &[]), layer(2, 0.85, &[(1, 0.4)]), layer(3, 0.8, &[(1, 0.2), (2, 0.7)])],
+            layers: vec![
+                layer(1, 0.95, &[]),
+                layer(2, 0.85, &[(1, 0.4)]),
+                layer(3, 0.8, &[(1, 0.2), (2, 0.7)]),
+            ],
         };
         let depths = [0.31, 0.9, 0.17];
         let out = conversion.outputs(&depths);

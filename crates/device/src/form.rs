@@ -158,8 +158,11 @@ pub(crate) trait BuildFace {
     /// Fabrication quantities of this form.
     type Quantities;
     /// Quantities that give channel photon demands, by the form's rule for its freedoms.
-    fn realise(&self, context: &Context<'_>, demands: &[f64])
-    -> Result<Realised<Self::Quantities>, DeviceError>;
+    fn realise(
+        &self,
+        context: &Context<'_>,
+        demands: &[f64],
+    ) -> Result<Realised<Self::Quantities>, DeviceError>;
     /// What given quantities give.
     fn states(&self, context: &Context<'_>, made: &Self::Quantities) -> Result<States, DeviceError>;
     /// Electrical coupling, for the power model.

@@ -126,8 +126,12 @@ impl Made {
                     }
                 }
                 match stripes.currents {
-                    StripeCurrents::Common(current) => out.push((whole(QuantityKind::CommonCurrentDensity), current)),
-                    StripeCurrents::Voltage(voltage) => out.push((whole(QuantityKind::CommonVoltage), voltage)),
+                    StripeCurrents::Common(current) => {
+                        out.push((whole(QuantityKind::CommonCurrentDensity), current));
+                    }
+                    StripeCurrents::Voltage(voltage) => {
+                        out.push((whole(QuantityKind::CommonVoltage), voltage));
+                    }
                     StripeCurrents::Own(_) => {}
                 }
             }
@@ -147,9 +151,14 @@ impl Made {
                 out.extend(current.map(|value| (whole(QuantityKind::CommonCurrentDensity), value)));
             }
             Quantities::Packages(board) => {
-                for (k, &current) in board.currents_ma.iter().enumerate().filter(|(_, current)| **current > 0.0) {
+                for (k, &current) in
+                    board.currents_ma.iter().enumerate().filter(|(_, current)| **current > 0.0)
+                {
                     out.push((of(QuantityKind::PackageCurrent, k), current));
-                    out.push((of(QuantityKind::PackageFlux, k), board.flux_factors.get(k).copied().unwrap_or(1.0)));
+                    out.push((
+                        of(QuantityKind::PackageFlux, k),
+                        board.flux_factors.get(k).copied().unwrap_or(1.0),
+                    ));
                 }
             }
         }
@@ -192,7 +201,9 @@ impl Made {
             (Quantities::SharedZone(zone), QuantityKind::Thickness) => {
                 zone.settings.get_mut(k).and_then(|setting| setting.thickness_nm.as_mut())
             }
-            (Quantities::SharedZone(zone), QuantityKind::CommonCurrentDensity) => zone.current_ma_per_cm2.as_mut(),
+            (Quantities::SharedZone(zone), QuantityKind::CommonCurrentDensity) => {
+                zone.current_ma_per_cm2.as_mut()
+            }
             (Quantities::Packages(board), QuantityKind::PackageCurrent) => board.currents_ma.get_mut(k),
             (Quantities::Packages(board), QuantityKind::PackageFlux) => board.flux_factors.get_mut(k),
             _ => None,

@@ -191,12 +191,14 @@ impl Packages {
     fn untrimmed(&self, context: &Context<'_>, demands: &[f64]) -> Result<(Board, Vec<String>), DeviceError> {
         let lit: Vec<usize> = Context::lit(demands).collect();
         let lights = context.channel_lights();
-        let each: Vec<f64> =
-            lit.iter().map(|&k| context.characteristics[k].photon_current(test_current(context, k))).collect();
+        let each: Vec<f64> = lit
+            .iter()
+            .map(|&k| context.characteristics[k].photon_current(test_current(context, k)))
+            .collect();
         let at_most = self.at_most.unwrap_or(DEFAULT_MOST_PACKAGES);
-        let target = context.white(&lights, demands).ok_or_else(|| DeviceError::Unreachable {
-            reason: "there is no light to make".to_owned(),
-        })?;
+        let target = context
+            .white(&lights, demands)
+            .ok_or_else(|| DeviceError::Unreachable { reason: "there is no light to make".to_owned() })?;
         let lumens: f64 = lit.iter().map(|&k| demands[k] * lights[k].lumens).sum();
         // Y and lumens are proportional, whatever the scale of the tristimulus values.
         let y: f64 = lit.iter().map(|&k| demands[k] * lights[k].xyz[1]).sum();
@@ -219,14 +221,24 @@ impl Packages {
             board.counts[k] = count;
             board.currents_ma[k] = test_current(context, k);
         }
-        let looked = if found.exhaustive { "all combinations looked at" } else { "searched along multiples of the blend" };
-        let notice =
-            format!("whole numbers at test currents: Δu′v′ {:.5} from the blend ({looked})", found.delta_uv_prime);
+        let looked = if found.exhaustive {
+            "all combinations looked at"
+        } else {
+            "searched along multiples of the blend"
+        };
+        let notice = format!(
+            "whole numbers at test currents: Δu′v′ {:.5} from the blend ({looked})",
+            found.delta_uv_prime
+        );
         Ok((board, vec![notice]))
     }
 
     /// Least power over whole numbers and currents, in watts; counts stand in for areas.
-    pub(crate) fn least_power(&self, context: &Context<'_>, demands: &[f64]) -> Result<LeastPower, DeviceError> {
+    pub(crate) fn least_power(
+        &self,
+        context: &Context<'_>,
+        demands: &[f64],
+    ) -> Result<LeastPower, DeviceError> {
         context.need_eqe(demands)?;
         for k in Context::lit(demands) {
             if !context.characteristics[k].has_voltage() {
@@ -236,7 +248,8 @@ impl Packages {
                 });
             }
         }
-        let found = self.least_power_counts(context, demands, self.at_most.unwrap_or(DEFAULT_MOST_PACKAGES))?;
+        let found =
+            self.least_power_counts(context, demands, self.at_most.unwrap_or(DEFAULT_MOST_PACKAGES))?;
         let watts = |(k, (count, current)): (usize, &(u32, f64))| match count {
             0 => 0.0,
             count => f64::from(*count) * current * 1e-3 * context.characteristics[k].voltage(*current),
@@ -316,7 +329,10 @@ impl BuildFace for Packages {
                     ),
                 })?;
                 if !self.allowed(c, count, current) {
-                    notices.push(format!("{count} package(s) of {} do not fit the string voltage window", c.name()));
+                    notices.push(format!(
+                        "{count} package(s) of {} do not fit the string voltage window",
+                        c.name()
+                    ));
                 }
                 board.counts[k] = count;
                 board.currents_ma[k] = current;
@@ -350,7 +366,8 @@ impl BuildFace for Packages {
                 out.assumptions.push(format!("{}: the forward voltage is taken as constant", emitter.name));
             }
             if package.radiant_flux_w.is_none() {
-                out.assumptions.push(format!("{}: packages are taken at the middle of their flux bin", emitter.name));
+                out.assumptions
+                    .push(format!("{}: packages are taken at the middle of their flux bin", emitter.name));
             }
             let parallel = self.lines(context, &out.quantities)[k].strings.is_some_and(|strings| strings > 1);
             if parallel {
@@ -381,9 +398,9 @@ impl BuildFace for Packages {
             let die_cm2 = package.and_then(|p| p.die_area_mm2).map(|mm2| mm2 * 1e-2);
             let eqe = at.eqe.map(|eqe| eqe * made.flux_factors.get(k).copied().unwrap_or(1.0));
             let photon_current = packages * current * eqe.unwrap_or(0.0);
-            let by_wall_plug = c
-                .wall_plug()
-                .map(|w| photon_current * context.channels.watts_per_photon_current(context.channels.driven[k]) / w);
+            let by_wall_plug = c.wall_plug().map(|w| {
+                photon_current * context.channels.watts_per_photon_current(context.channels.driven[k]) / w
+            });
             states.channels.push(ChannelState {
                 photon_current,
                 eqe,

@@ -157,7 +157,8 @@ impl PowerModel {
         }
         let Some((low, high)) = self.parameter_range(demands) else {
             return Err(DeviceError::Unreachable {
-                reason: "the sheets of the lit emitters have no common range of current or voltage".to_owned(),
+                reason: "the sheets of the lit emitters have no common range of current or voltage"
+                    .to_owned(),
             });
         };
         let value = |log: f64| self.watts_at(log.exp().clamp(low, high), demands).unwrap_or(f64::INFINITY);
@@ -276,7 +277,8 @@ impl PowerModel {
                     .zip(demands)
                     .zip(repeats)
                     .all(|((c, d), repeats)| fits(*d, fill * repeats * c.photon_current(at)));
-                let volts: f64 = self.characteristics.iter().zip(repeats).map(|(c, r)| r * c.voltage(at)).sum();
+                let volts: f64 =
+                    self.characteristics.iter().zip(repeats).map(|(c, r)| r * c.voltage(at)).sum();
                 enough.then_some(self.scale * fill * at * (volts + junctions_v))
             }
             Coupling::Zone { fill, voltage } => {
@@ -380,7 +382,8 @@ impl PowerModel {
                 Plane { constant_w: -price * budget, per_radiant_w: self.per_watt(&per_demand) }
             })
             .collect();
-        let tightest: Vec<f64> = self.items.iter().map(|item| 1.0 / most_photons(item.characteristic())).collect();
+        let tightest: Vec<f64> =
+            self.items.iter().map(|item| 1.0 / most_photons(item.characteristic())).collect();
         let rows = vec![Row { per_radiant_w: self.per_watt(&tightest), at_most: budget }];
         Cell { low: 0.0, high: 0.0, planes, rows }
     }

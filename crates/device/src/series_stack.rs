@@ -189,10 +189,13 @@ impl SeriesStack {
         if lit.iter().all(|&k| context.characteristics[k].has_voltage()) {
             // Dark units are left out of the stack.
             let first = *lit.first().ok_or_else(no_light)?;
-            let stand_in = |k: usize| context.characteristics[if demands[k] > 0.0 { k } else { first }].clone();
+            let stand_in =
+                |k: usize| context.characteristics[if demands[k] > 0.0 { k } else { first }].clone();
             let coupling = Coupling::Series {
                 fill,
-                repeats: (0..demands.len()).map(|k| if demands[k] > 0.0 { f64::from(repeats[k]) } else { 0.0 }).collect(),
+                repeats: (0..demands.len())
+                    .map(|k| if demands[k] > 0.0 { f64::from(repeats[k]) } else { 0.0 })
+                    .collect(),
                 junctions_v: self.junctions_v(repeats, demands),
             };
             let characteristics = (0..demands.len()).map(stand_in).collect();
@@ -206,7 +209,10 @@ impl SeriesStack {
             let floor = c.range().0;
             let least = if wanted <= c.photon_current(floor) { Some(floor) } else { c.current_for(wanted) };
             current = current.max(least.ok_or_else(|| DeviceError::Unreachable {
-                reason: format!("{} gives too few photons at any current of its sheet: repeat the unit", c.name()),
+                reason: format!(
+                    "{} gives too few photons at any current of its sheet: repeat the unit",
+                    c.name()
+                ),
             })?);
         }
         Ok(current)
@@ -239,9 +245,10 @@ impl SeriesStack {
                 current = self.current_for_lumens(context, &lit, wanted, give)?;
             }
             let Some(most) = self.most_units else { break };
-            let best = closest_repeats(context, demands, current, most).ok_or_else(|| DeviceError::Unreachable {
-                reason: format!("{most} units are fewer than the emitters of the blend"),
-            })?;
+            let best =
+                closest_repeats(context, demands, current, most).ok_or_else(|| DeviceError::Unreachable {
+                    reason: format!("{most} units are fewer than the emitters of the blend"),
+                })?;
             let mut next = vec![0; repeats.len()];
             lit.iter().zip(&best.counts).for_each(|(&k, &count)| next[k] = count);
             if next == repeats {
@@ -253,7 +260,13 @@ impl SeriesStack {
             context.characteristics[k].at(current)?;
         }
         let eqe: Vec<f64> = (0..demands.len())
-            .map(|k| if demands[k] > 0.0 { f64::from(repeats[k]) * context.characteristics[k].eqe(current) } else { 0.0 })
+            .map(|k| {
+                if demands[k] > 0.0 {
+                    f64::from(repeats[k]) * context.characteristics[k].eqe(current)
+                } else {
+                    0.0
+                }
+            })
             .collect();
         out.push("units as measured: the white is the closest these whole repeats give".to_owned());
         Ok(Stack { order, repeats, eqe, current_ma_per_cm2: current })
@@ -336,7 +349,8 @@ pub(crate) fn closest_repeats(
             lights[k].xyz.map(|part| part * each)
         })
         .collect();
-    let search = WholeNumbers { xyz_each, target, at_least: vec![1; lit.len()], at_most: most_units, least_y: 0.0 };
+    let search =
+        WholeNumbers { xyz_each, target, at_least: vec![1; lit.len()], at_most: most_units, least_y: 0.0 };
     search.closest()
 }
 
@@ -358,7 +372,11 @@ pub struct Dimming {
 /// Drift of a stack's white at lower levels, by amplitude and by pulse width.
 ///
 /// Tuned units are taken to keep their measured roll-off: `EQE_i(J) = eqe_i·EQE_sheet,i(J)/EQE_sheet,i(J_full)`.
-pub(crate) fn dimming(context: &Context<'_>, made: &Stack, levels: &[f64]) -> Result<Vec<Dimming>, DeviceError> {
+pub(crate) fn dimming(
+    context: &Context<'_>,
+    made: &Stack,
+    levels: &[f64],
+) -> Result<Vec<Dimming>, DeviceError> {
     let lit: Vec<usize> = (0..made.eqe.len()).filter(|&k| made.eqe[k] > 0.0).collect();
     for &k in &lit {
         if !context.characteristics[k].has_eqe() {
@@ -444,7 +462,8 @@ impl BuildFace for SeriesStack {
             out.assumptions.push("no voltage is lost in the junctions between units".to_owned());
         }
         if self.tuning == Tuning::Designed {
-            out.assumptions.push("a unit tuned to less EQE keeps its measured voltage and roll-off".to_owned());
+            out.assumptions
+                .push("a unit tuned to less EQE keeps its measured voltage and roll-off".to_owned());
         }
         Ok(out)
     }
@@ -492,7 +511,8 @@ impl BuildFace for SeriesStack {
     }
 
     fn freedoms(&self, _context: &Context<'_>) -> Vec<String> {
-        let mut out = vec!["the order of the units is free".to_owned(), "the repeats of each unit are free".to_owned()];
+        let mut out =
+            vec!["the order of the units is free".to_owned(), "the repeats of each unit are free".to_owned()];
         if self.current_ma_per_cm2.is_none() {
             out.push("the current density is free, traded against the EQE each unit needs".to_owned());
         }

@@ -13,8 +13,8 @@ use crate::error::DeviceError;
 use crate::form::{BuildFace, ChannelState, Context, Realised, States, checked_fill};
 use crate::light::DeviceEmitter;
 use crate::power::Coupling;
-use crate::sheet::{Sheet, VoltageModel};
 use crate::shares;
+use crate::sheet::{Sheet, VoltageModel};
 use crate::working::Characteristic;
 
 /// Which number of an emitter is turned to meet the white.
@@ -101,7 +101,11 @@ impl SharedZone {
         for run in &self.runs {
             if run.settings.len() != context.emitters.len() {
                 let (expected, found) = (context.emitters.len(), run.settings.len());
-                return Err(DeviceError::LengthMismatch { what: "settings of a calibration run", expected, found });
+                return Err(DeviceError::LengthMismatch {
+                    what: "settings of a calibration run",
+                    expected,
+                    found,
+                });
             }
             let radiant =
                 shares::convert(&run.shares, run.kind, shares::ShareKind::Radiant, &context.lights)?;
@@ -133,13 +137,17 @@ impl SharedZone {
     }
 
     /// The setting that gives a wanted log ratio.
-    fn solve(&self, name: &str, emitter: usize, law: &LogLinear, wanted: f64) -> Result<ZoneSetting, DeviceError> {
+    fn solve(
+        &self,
+        name: &str,
+        emitter: usize,
+        law: &LogLinear,
+        wanted: f64,
+    ) -> Result<ZoneSetting, DeviceError> {
         let mut setting = law.mean_setting();
         let hold = self.hold_of(emitter);
-        let turn = hold.map_or(
-            if law.beta.is_some() { Knob::Concentration } else { Knob::Thickness },
-            |hold| hold.turn,
-        );
+        let turn = hold
+            .map_or(if law.beta.is_some() { Knob::Concentration } else { Knob::Thickness }, |hold| hold.turn);
         if let Some(other) = hold.and_then(|hold| hold.other) {
             match turn {
                 Knob::Concentration => setting.thickness_nm = Some(other),
@@ -151,7 +159,8 @@ impl SharedZone {
         };
         match turn {
             Knob::Concentration => {
-                let beta = law.beta.filter(|b| b.abs() > 1e-9).ok_or_else(|| uncalibrated("concentration"))?;
+                let beta =
+                    law.beta.filter(|b| b.abs() > 1e-9).ok_or_else(|| uncalibrated("concentration"))?;
                 let rest = law.delta_per_nm.zip(setting.thickness_nm).map_or(0.0, |(d, t)| d * t);
                 setting.concentration_percent = Some(((wanted - law.alpha - rest) / beta).exp());
             }
@@ -213,7 +222,9 @@ impl SharedZone {
             return unreachable("the sheets have no current density in common".to_owned());
         }
         if surplus(low) > 1e-12 * low {
-            return unreachable(format!("the zone gives more light than asked for at its lowest current {low} mA/cm²"));
+            return unreachable(format!(
+                "the zone gives more light than asked for at its lowest current {low} mA/cm²"
+            ));
         }
         let steps = 400;
         let at = |k: usize| low * (high / low).powf(k as f64 / steps as f64);
@@ -278,7 +289,8 @@ impl BuildFace for SharedZone {
         let (reference, laws) = self.laws(context)?;
         if demands[reference] <= 0.0 {
             return Err(DeviceError::Unreachable {
-                reason: "the reference emitter of the calibration is dark in this blend: choose another".to_owned(),
+                reason: "the reference emitter of the calibration is dark in this blend: choose another"
+                    .to_owned(),
             });
         }
         let mut settings = Vec::with_capacity(demands.len());
@@ -310,7 +322,8 @@ impl BuildFace for SharedZone {
             out.assumptions.push("the whole panel is lit (fill 1)".to_owned());
         }
         if self.voltage.is_none() {
-            out.assumptions.push("the zone's voltage is the highest of its emitters' at that current".to_owned());
+            out.assumptions
+                .push("the zone's voltage is the highest of its emitters' at that current".to_owned());
         }
         let known = Context::lit(demands).all(|k| context.characteristics[k].has_eqe());
         out.quantities.current_ma_per_cm2 = match (self.current_ma_per_cm2, known) {
@@ -369,7 +382,8 @@ impl BuildFace for SharedZone {
             states.notices.append(&mut at.notices);
             per_photon += shares[k] / at.eqe.unwrap_or(f64::NAN);
             all_volts &= at.voltage_v.is_some();
-            highest = at.voltage_v.map(|volts| highest.map_or(volts, |most: f64| most.max(volts))).or(highest);
+            highest =
+                at.voltage_v.map(|volts| highest.map_or(volts, |most: f64| most.max(volts))).or(highest);
         }
         let volts = match self.zone_voltage()? {
             Some(zone) => zone.at(current)?.voltage_v,
@@ -400,7 +414,10 @@ impl BuildFace for SharedZone {
         let Ok((_, laws)) = self.laws(context) else {
             return Vec::new();
         };
-        let both = laws.iter().flatten().filter(|law| law.beta.is_some() && law.delta_per_nm.is_some()).count();
-        vec![format!("{both} emitter(s) have both concentration and thickness calibrated: one of the two is free")]
+        let both =
+            laws.iter().flatten().filter(|law| law.beta.is_some() && law.delta_per_nm.is_some()).count();
+        vec![format!(
+            "{both} emitter(s) have both concentration and thickness calibrated: one of the two is free"
+        )]
     }
 }

@@ -143,8 +143,7 @@ impl SideBySide {
     pub fn holding_currents(&self, made: &Stripes, driven: &[usize]) -> SideBySide {
         let mut held = self.holding_areas(made, driven);
         if let StripeCurrents::Own(currents) = &made.currents {
-            let hold =
-                |(&emitter, &ma_per_cm2): (&usize, &f64)| StripeHold::Current { emitter, ma_per_cm2 };
+            let hold = |(&emitter, &ma_per_cm2): (&usize, &f64)| StripeHold::Current { emitter, ma_per_cm2 };
             held.holds = driven.iter().zip(currents).filter(|(_, j)| **j > 0.0).map(hold).collect();
         }
         held
@@ -267,9 +266,8 @@ impl SideBySide {
                 if known {
                     return own_least_power(context, wanted, budget);
                 }
-                out.assumptions.push(
-                    "least power needs every voltage: the currents are taken equal instead".to_owned(),
-                );
+                out.assumptions
+                    .push("least power needs every voltage: the currents are taken equal instead".to_owned());
                 equal_current(context, wanted, budget)
             }
             Freedom::EqualCurrent => equal_current(context, wanted, budget),
@@ -482,8 +480,9 @@ impl BuildFace for SideBySide {
         }
         let used: f64 = out.quantities.areas.iter().sum();
         if used > budget * (1.0 + 1e-9) {
-            out.notices
-                .push(format!("the stripes take {used:.4} of the panel, {budget:.4} is there: less light or more current"));
+            out.notices.push(format!(
+                "the stripes take {used:.4} of the panel, {budget:.4} is there: less light or more current"
+            ));
         }
         let names: Vec<&str> = context.characteristics.iter().map(|c| c.name()).collect();
         let narrow = self.too_narrow(&out.quantities.areas, &names);

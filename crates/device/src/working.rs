@@ -116,7 +116,8 @@ impl Characteristic {
                 (Inclusion::InMeasuredEqe, _) => {}
                 (Inclusion::NotInMeasuredEqe, CouplingFactor::Number(factor)) => eqe_factor *= factor,
                 (Inclusion::NotInMeasuredEqe, CouplingFactor::PerWavelength(_)) => {
-                    eqe_factor *= above_zero("the photon factor of the out-coupling", emitter.light.photon_factor)?;
+                    eqe_factor *=
+                        above_zero("the photon factor of the out-coupling", emitter.light.photon_factor)?;
                 }
                 // Either reading could be wrong by the whole factor, so neither is taken.
                 (Inclusion::Unasked, _) => eqe = None,
@@ -150,7 +151,8 @@ impl Characteristic {
                 Some(VoltageLaw::Constant(above_zero("the constant voltage", *value)?))
             }
         };
-        let wall_plug = sheet.wall_plug.map(|value| above_zero("the wall-plug efficiency", value)).transpose()?;
+        let wall_plug =
+            sheet.wall_plug.map(|value| above_zero("the wall-plug efficiency", value)).transpose()?;
         if let Some(value) = wall_plug.filter(|value| *value > 1.0) {
             return Err(DeviceError::BadSetting {
                 what: "the wall-plug efficiency",
@@ -299,9 +301,8 @@ impl Characteristic {
 
     fn climb(&mut self) {
         let (low, high) = self.range;
-        let mut currents: Vec<f64> = (0..=LADDER_STEPS)
-            .map(|k| low * (high / low).powf(k as f64 / LADDER_STEPS as f64))
-            .collect();
+        let mut currents: Vec<f64> =
+            (0..=LADDER_STEPS).map(|k| low * (high / low).powf(k as f64 / LADDER_STEPS as f64)).collect();
         if let Some(last) = currents.last_mut() {
             *last = high;
         }
@@ -346,7 +347,10 @@ impl Characteristic {
     }
 
     /// A characteristic that knows nothing but its light, with the sentences that say why.
-    pub(crate) fn unknown(emitter: &DeviceEmitter, missing: Vec<String>) -> Result<Characteristic, DeviceError> {
+    pub(crate) fn unknown(
+        emitter: &DeviceEmitter,
+        missing: Vec<String>,
+    ) -> Result<Characteristic, DeviceError> {
         let bare = DeviceEmitter { sheet: Sheet::default(), temperature_c: None, ..emitter.clone() };
         Ok(Characteristic { missing, ..Characteristic::of(&bare)? })
     }
@@ -445,7 +449,7 @@ impl Characteristic {
         if (first.1 - wanted).abs() <= tolerance {
             return Some(first.0);
         }
-        if !(wanted > first.1) {
+        if wanted.is_nan() || wanted <= first.1 {
             return None;
         }
         let Some(step) = self.ladder.windows(2).find(|pair| pair[1].1 >= wanted) else {
@@ -491,7 +495,8 @@ impl Characteristic {
         let (low, high) = self.range;
         let reach = TABLE_REACH * (1.0 + 1e-12);
         let at = current_ma_per_cm2;
-        if !(at > 0.0 && at * reach >= low && at <= high * reach) && !self.range_is_assumed {
+        let near = at > 0.0 && at * reach >= low && at <= high * reach;
+        if !(near || self.range_is_assumed) {
             let quantity = "the emitter's working range";
             return Err(DeviceError::OutsideTable { quantity, at, low, high, unit: self.unit });
         }
