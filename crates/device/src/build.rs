@@ -217,6 +217,16 @@ impl Build {
         recipe.delta_uv_prime = Some(delta_uv_prime(recipe.u_prime.zip(recipe.v_prime), target));
         recipe.assumptions.splice(0..0, realised.assumptions);
         recipe.notices.splice(0..0, realised.notices);
+        let asked = lumens_of(&context, &radiant);
+        let given = match self.basis() {
+            Basis::PanelArea => recipe.luminous_exitance_lm_per_m2,
+            Basis::Whole => recipe.luminous_flux_lm,
+        };
+        let differs = |given: &f64| (given / asked - 1.0).abs() > 1e-6;
+        if let Some(given) = given.filter(differs) {
+            let unit = if self.basis() == Basis::Whole { "lm" } else { "lm/m²" };
+            recipe.notices.push(format!("gives {given:.1} {unit} where {asked:.1} {unit} was asked for"));
+        }
         Ok(recipe)
     }
 
@@ -530,20 +540,20 @@ impl Build {
     /// # Errors
     /// Quantities of another form, or conversions that do not fit the emitters.
     pub fn holding(&self, emitters: &[DeviceEmitter], made: &Made) -> Result<Build, DeviceError> {
-        let lights: Vec<EmitterLight> = emitters.iter().map(|emitter| emitter.light).collect();
-        let driven = Channels::new(&lights, &self.conversions, self.basis())?.driven;
+        let context = self.context(emitters)?;
+        let driven = &context.channels.driven;
         let form = match (&self.form, &made.quantities) {
             (FormSettings::SideBySide(form), Quantities::SideBySide(made)) => {
-                FormSettings::SideBySide(form.holding_areas(made, &driven))
+                FormSettings::SideBySide(form.holding_areas(made, driven))
             }
             (FormSettings::SeriesStack(form), Quantities::SeriesStack(made)) => {
-                FormSettings::SeriesStack(form.holding(made, &driven))
+                FormSettings::SeriesStack(form.holding(made, driven))
             }
             (FormSettings::SharedZone(form), Quantities::SharedZone(made)) => {
-                FormSettings::SharedZone(form.holding(made, &driven))
+                FormSettings::SharedZone(form.holding(&context, made)?)
             }
             (FormSettings::Packages(form), Quantities::Packages(made)) => {
-                FormSettings::Packages(form.holding(made, &driven, emitters.len()))
+                FormSettings::Packages(form.holding(made, driven, emitters.len()))
             }
             _ => {
                 return Err(DeviceError::Unreachable {

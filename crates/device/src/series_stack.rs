@@ -230,31 +230,45 @@ impl SeriesStack {
         // Lumens stand for the level; the light of a channel is that of its pump and converters together.
         let lumens_per_photon: Vec<f64> = context.channel_lights().iter().map(|light| light.lumens).collect();
         let wanted: f64 = lit.iter().map(|&k| demands[k] * lumens_per_photon[k]).sum();
-        let mut current = self.current_ma_per_cm2.unwrap_or(0.0);
-        // Repeats and current depend on each other only through roll-off: a few rounds settle them.
-        for _ in 0..8 {
-            if self.current_ma_per_cm2.is_none() {
-                let give = |j: f64| -> f64 {
-                    lit.iter()
-                        .map(|&k| {
-                            let c = &context.characteristics[k];
-                            fill * f64::from(repeats[k]) * c.photon_current(j) * lumens_per_photon[k]
-                        })
-                        .sum()
+        let current_of = |repeats: &[u32]| -> Result<f64, DeviceError> {
+            if let Some(current) = self.current_ma_per_cm2 {
+                return Ok(current);
+            }
+            let give = |j: f64| -> f64 {
+                let one = |&k: &usize| {
+                    let photons = f64::from(repeats[k]) * context.characteristics[k].photon_current(j);
+                    fill * photons * lumens_per_photon[k]
                 };
-                current = self.current_for_lumens(context, &lit, wanted, give)?;
+                lit.iter().map(one).sum()
+            };
+            self.current_for_lumens(context, &lit, wanted, give)
+        };
+        let mut current = match self.most_units {
+            // A first guess for the search of repeats: every lit unit as often as the limit allows on average.
+            Some(most) => {
+                let average = (most / lit.len().max(1) as u32).max(1);
+                let spread: Vec<u32> = repeats.iter().map(|_| average).collect();
+                current_of(&spread)?
             }
-            let Some(most) = self.most_units else { break };
-            let best =
-                closest_repeats(context, demands, current, most).ok_or_else(|| DeviceError::Unreachable {
-                    reason: format!("{most} units are fewer than the emitters of the blend"),
+            None => current_of(&repeats)?,
+        };
+        if let Some(most) = self.most_units {
+            // Repeats and current depend on each other only through roll-off: a few rounds settle them.
+            for _ in 0..8 {
+                let best = closest_repeats(context, demands, current, most).ok_or_else(|| {
+                    DeviceError::Unreachable {
+                        reason: format!("{most} units are fewer than the emitters of the blend"),
+                    }
                 })?;
-            let mut next = vec![0; repeats.len()];
-            lit.iter().zip(&best.counts).for_each(|(&k, &count)| next[k] = count);
-            if next == repeats {
-                break;
+                let mut next = vec![0; repeats.len()];
+                lit.iter().zip(&best.counts).for_each(|(&k, &count)| next[k] = count);
+                let settled = next == repeats;
+                repeats = next;
+                current = current_of(&repeats)?;
+                if settled {
+                    break;
+                }
             }
-            repeats = next;
         }
         for &k in &lit {
             context.characteristics[k].at(current)?;
@@ -324,7 +338,7 @@ impl SeriesStack {
                 repeats_needed: one.map(|eqe| (made.eqe[k] / eqe - 1e-9).ceil().max(1.0) as u32),
             }
         };
-        made.order.iter().map(need).collect()
+        made.order.iter().filter(|&&k| made.eqe[k] > 0.0).map(need).collect()
     }
 }
 
@@ -447,7 +461,11 @@ impl BuildFace for SeriesStack {
 
     fn realise(&self, context: &Context<'_>, demands: &[f64]) -> Result<Realised<Stack>, DeviceError> {
         context.need_eqe(demands)?;
-        let layout = self.layout(context)?;
+        let (mut order, mut repeats) = self.layout(context)?;
+        // A unit without light is left out of the stack.
+        order.retain(|&k| demands[k] > 0.0);
+        (0..demands.len()).filter(|&k| demands[k] <= 0.0).for_each(|k| repeats[k] = 0);
+        let layout = (order, repeats);
         let mut notices = Vec::new();
         let stack = match self.tuning {
             Tuning::Designed => self.designed(context, demands, layout, &mut notices)?,

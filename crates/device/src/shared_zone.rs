@@ -244,24 +244,26 @@ impl SharedZone {
         Ok(b.exp().clamp(low, high))
     }
 
-    /// The same settings with the untouched numbers and the current of a made zone fixed.
-    pub fn holding(&self, made: &Zone, driven: &[usize]) -> SharedZone {
-        let hold = |(&emitter, setting): (&usize, &ZoneSetting)| {
-            let turn = self.hold_of(emitter).map(|hold| hold.turn);
-            let turn = turn.unwrap_or(if setting.concentration_percent.is_some() {
-                Knob::Concentration
-            } else {
-                Knob::Thickness
-            });
+    /// The same settings with the numbers that were not turned fixed as in a made zone.
+    pub(crate) fn holding(&self, context: &Context<'_>, made: &Zone) -> Result<SharedZone, DeviceError> {
+        let (_, laws) = self.laws(context)?;
+        let mut holds = Vec::new();
+        for ((&emitter, setting), law) in context.channels.driven.iter().zip(&made.settings).zip(&laws) {
+            let Some(law) = law else { continue };
+            let turn = self.knob(emitter, law);
             let other = match turn {
                 Knob::Concentration => setting.thickness_nm,
                 Knob::Thickness => setting.concentration_percent,
             };
-            ZoneHold { emitter, turn, other }
-        };
-        // A stored hold wins; otherwise the knob that was free is guessed from what the calibration varies.
-        let holds = driven.iter().zip(&made.settings).map(hold).collect();
-        SharedZone { holds, ..self.clone() }
+            holds.push(ZoneHold { emitter, turn, other });
+        }
+        Ok(SharedZone { holds, ..self.clone() })
+    }
+
+    /// The knob that is turned for an emitter: as set, or the concentration where it is calibrated.
+    fn knob(&self, emitter: usize, law: &LogLinear) -> Knob {
+        let calibrated = if law.beta.is_some() { Knob::Concentration } else { Knob::Thickness };
+        self.hold_of(emitter).map_or(calibrated, |hold| hold.turn)
     }
 
     /// The lines of a zone recipe, with intervals and next runs.
