@@ -1,7 +1,8 @@
 //! The project itself: format version, identities, and the checks every loaded project passes.
 
-use crate::{Emitter, EmitterId, EmitterSet, SetId, ShareKind};
+use crate::{Emitter, EmitterId, EmitterSet, Metric, SetId, ShareKind};
 use serde::{Deserialize, Serialize};
+use std::collections::BTreeSet;
 
 /// The newest project format this program writes. Older ones are migrated, newer ones refused untouched.
 pub const FORMAT_VERSION: u32 = 1;
@@ -56,6 +57,34 @@ pub enum ProjectError {
     /// Two emitters or two sets share an identity.
     #[error("identity {0} is used twice")]
     DuplicateIdentity(u64),
+    /// An emitter stands in a set twice.
+    #[error("set \u{201c}{set}\u{201d} holds \u{201c}{emitter}\u{201d} twice")]
+    RepeatedMember {
+        /// Name of the set.
+        set: String,
+        /// Name of the emitter.
+        emitter: String,
+    },
+    /// The columns of an import differ in length.
+    #[error("{emitter}: {wavelengths} wavelengths but {values} values")]
+    Ragged {
+        /// Name of the emitter.
+        emitter: String,
+        /// Number of wavelengths.
+        wavelengths: usize,
+        /// Number of values.
+        values: usize,
+    },
+    /// A share outside its range.
+    #[error("{place}: expected {expected}, found {found}")]
+    OutOfRange {
+        /// Where.
+        place: String,
+        /// What was expected.
+        expected: &'static str,
+        /// What stood there.
+        found: String,
+    },
     /// A number that must be finite is not.
     #[error("{place}: expected a finite number, found {found}")]
     NotFinite {
@@ -127,41 +156,173 @@ impl Project {
         if self.version > FORMAT_VERSION {
             return Err(ProjectError::TooNew { found: self.version });
         }
-        let mut seen = std::collections::BTreeSet::new();
-        for id in self.emitters.iter().map(|e| e.id.0) {
-            if !seen.insert(id) {
-                return Err(ProjectError::DuplicateIdentity(id));
+        let mut seen = BTreeSet::new();
+        for emitter in &self.emitters {
+            if !seen.insert(emitter.id.0) {
+                return Err(ProjectError::DuplicateIdentity(emitter.id.0));
             }
+            check_emitter(emitter)?;
         }
-        let mut seen = std::collections::BTreeSet::new();
+        let mut seen = BTreeSet::new();
         for set in &self.sets {
             if !seen.insert(set.id.0) {
                 return Err(ProjectError::DuplicateIdentity(set.id.0));
             }
-            let finite = |place: &str, value: f64| {
-                if value.is_finite() {
-                    Ok(())
-                } else {
-                    Err(ProjectError::NotFinite {
-                        place: format!("{}, {place}", set.name),
-                        found: value.to_string(),
-                    })
-                }
+            self.check_set(set)?;
+        }
+        Ok(())
+    }
+
+    fn check_set(&self, set: &EmitterSet) -> Result<(), ProjectError> {
+        let place = |what: &str| format!("{}, {what}", set.name);
+        finite(|| place("target CCT"), set.white.cct_k)?;
+        finite(|| place("target Duv"), set.white.duv)?;
+        for metric in Metric::ALL {
+            let limit = set.white.limits.of(metric);
+            for end in [limit.low, limit.high].into_iter().flatten() {
+                finite(|| place(&format!("limit on {}", metric.key())), end)?;
+            }
+        }
+        for wanted in [set.white.lumens, set.white.luminance_cd_per_m2].into_iter().flatten() {
+            finite(|| place("wanted light"), wanted)?;
+        }
+        let mut seen = BTreeSet::new();
+        for member in &set.members {
+            let Some(emitter) = self.emitter(member.emitter) else {
+                return Err(ProjectError::UnknownEmitter {
+                    set: set.name.clone(),
+                    emitter: member.emitter.0,
+                });
             };
-            finite("target CCT", set.white.cct_k)?;
-            finite("target Duv", set.white.duv)?;
-            for member in &set.members {
-                if self.emitter(member.emitter).is_none() {
-                    return Err(ProjectError::UnknownEmitter {
-                        set: set.name.clone(),
-                        emitter: member.emitter.0,
+            if !seen.insert(member.emitter) {
+                return Err(ProjectError::RepeatedMember {
+                    set: set.name.clone(),
+                    emitter: emitter.name.clone(),
+                });
+            }
+            for (what, value) in
+                [("share", member.share), ("least share", member.least), ("greatest share", member.most)]
+            {
+                let place = || place(&format!("{what} of {}", emitter.name));
+                finite(place, value)?;
+                if !(0.0..=1.0 + SHARE_ROUNDING).contains(&value) {
+                    return Err(ProjectError::OutOfRange {
+                        place: place(),
+                        expected: "0 to 1",
+                        found: value.to_string(),
                     });
                 }
-                finite("share", member.share)?;
-                finite("least share", member.least)?;
-                finite("most share", member.most)?;
             }
         }
         Ok(())
+    }
+}
+
+/// A share may exceed 1 by the rounding of a sum.
+const SHARE_ROUNDING: f64 = 1e-9;
+
+fn finite(place: impl Fn() -> String, value: f64) -> Result<(), ProjectError> {
+    if value.is_finite() {
+        Ok(())
+    } else {
+        Err(ProjectError::NotFinite { place: place(), found: value.to_string() })
+    }
+}
+
+fn check_emitter(emitter: &Emitter) -> Result<(), ProjectError> {
+    let (wavelengths, values) = (&emitter.import.wavelengths_nm, &emitter.import.power_per_nm);
+    if wavelengths.len() != values.len() {
+        return Err(ProjectError::Ragged {
+            emitter: emitter.name.clone(),
+            wavelengths: wavelengths.len(),
+            values: values.len(),
+        });
+    }
+    for value in wavelengths.iter().chain(values) {
+        finite(|| format!("{}, samples", emitter.name), *value)?;
+    }
+    if let Some(wall_plug) = emitter.wall_plug {
+        let place = || format!("{}, wall-plug efficiency", emitter.name);
+        finite(place, wall_plug)?;
+        if !(0.0..=1.0).contains(&wall_plug) {
+            return Err(ProjectError::OutOfRange {
+                place: place(),
+                expected: "0 to 1",
+                found: wall_plug.to_string(),
+            });
+        }
+    }
+    Ok(())
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::{Import, Member, WhiteSpec};
+
+    fn emitter(id: u64) -> Emitter {
+        let import =
+            Import { wavelengths_nm: vec![500.0, 510.0], power_per_nm: vec![1.0, 2.0], ..Import::default() };
+        Emitter {
+            id: EmitterId(id),
+            name: format!("Emitter {id}"),
+            invented: true,
+            note: String::new(),
+            import,
+            corrections: Vec::new(),
+            geometry: crate::Geometry::Unknown,
+            origin: crate::Origin::Unknown,
+            mounting: crate::Mounting::Unknown,
+            instrument_range_nm: None,
+            wall_plug: None,
+            sheet: device::Sheet::default(),
+        }
+    }
+
+    fn project() -> Project {
+        let mut project = Project::new("Library");
+        project.emitters = vec![emitter(1), emitter(2)];
+        let members = vec![Member { share: 1.0, ..Member::new(EmitterId(1)) }, Member::new(EmitterId(2))];
+        let white = WhiteSpec::default();
+        project.sets =
+            vec![EmitterSet { id: SetId(3), name: "A".into(), note: String::new(), members, white }];
+        project
+    }
+
+    #[test]
+    fn a_project_in_order_passes() {
+        assert_eq!(project().check(), Ok(()));
+    }
+
+    #[test]
+    fn what_other_parts_rely_on_is_checked_and_named() {
+        type Damage = fn(&mut Project);
+        let damages: [(&str, Damage); 9] = [
+            ("newer", |p| p.version = FORMAT_VERSION + 1),
+            ("identity 1", |p| p.emitters[1].id = EmitterId(1)),
+            ("not in the project", |p| p.sets[0].members[1].emitter = EmitterId(8)),
+            ("twice", |p| p.sets[0].members[1].emitter = EmitterId(1)),
+            ("NaN", |p| p.sets[0].members[0].share = f64::NAN),
+            ("0 to 1", |p| p.sets[0].members[0].share = -0.1),
+            ("Emitter 2, samples", |p| p.emitters[1].import.power_per_nm[0] = f64::INFINITY),
+            ("2 wavelengths but 1 values", |p| p.emitters[0].import.power_per_nm.truncate(1)),
+            ("limit on ra", |p| p.sets[0].white.limits.ra.low = Some(f64::NAN)),
+        ];
+        for (word, damage) in damages {
+            let mut project = project();
+            damage(&mut project);
+            let error = project.check().unwrap_err().to_string();
+            assert!(error.contains(word), "{word}: {error}");
+        }
+    }
+
+    #[test]
+    fn identities_are_never_given_twice() {
+        let mut project = project();
+        assert_eq!(project.unused_id(), 4);
+        let first = project.take_id();
+        assert!(first < project.take_id());
+        project.emitters.clear();
+        assert!(project.take_id() > first + 1);
     }
 }
