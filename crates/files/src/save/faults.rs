@@ -139,7 +139,7 @@ fn whatever_fails_the_last_or_the_previous_text_is_there() {
             assert!(found == "the text before" || found == "the new text", "{fault:?} at {at}: {found:?}");
             match outcome {
                 Ok(saved) => {
-                    assert_eq!((found.as_str(), saved.sha256), ("the new text", sha256(b"the new text")))
+                    assert_eq!((found.as_str(), saved.sha256), ("the new text", sha256(b"the new text")));
                 }
                 Err(error) => {
                     assert!(error.to_string().contains("not saved"), "{error}");
