@@ -13,7 +13,9 @@ const SHARES: [f64; 6] = [0.14, 0.11, 0.19, 0.15, 0.26, 0.15];
 fn emitters() -> Vec<Vec<f64>> {
     [(447.0, 21.0), (492.0, 33.0), (531.0, 58.0), (566.0, 41.0), (603.0, 77.0), (634.0, 22.0)]
         .into_iter()
-        .map(|(peak_nm, fwhm_nm)| Shape::GaussianNm { peak_nm, fwhm_nm }.colour_grid().expect("a valid shape"))
+        .map(|(peak_nm, fwhm_nm)| {
+            Shape::GaussianNm { peak_nm, fwhm_nm }.colour_grid().expect("a valid shape")
+        })
         .collect()
 }
 
@@ -41,7 +43,9 @@ fn metrics(criterion: &mut Criterion) {
         });
         group.bench_function("Ra and Rf with gradients", |b| {
             b.iter(|| {
-                let weights = [0.125, 0.125, 0.125, 0.125, 0.125, 0.125, 0.125, 0.125, 0.0, 0.0, 0.0, 0.0, 0.0, 0.0, 0.0];
+                let weights = [
+                    0.125, 0.125, 0.125, 0.125, 0.125, 0.125, 0.125, 0.125, 0.0, 0.0, 0.0, 0.0, 0.0, 0.0, 0.0,
+                ];
                 let ra = kernel.cri_gradient(black_box(&SHARES), &weights, &mut first);
                 (ra, kernel.rf_gradient(black_box(&SHARES), &mut second))
             });

@@ -13,6 +13,16 @@ pub fn planckian_relative(nm: f64, temperature_k: f64) -> f64 {
     (nm / 560.0).powi(-5) * (scale / 560.0).exp_m1() / (scale / nm).exp_m1()
 }
 
+/// Spectral exitance of a full radiator, W·m⁻²·nm⁻¹: c₁ λ⁻⁵/(exp(c₂/λT) − 1).
+///
+/// *Units:* nm, K. *Source:* Planck; c₁ = 2πhc² of CODATA 2018, c₂ = 1.4388e-2 m·K as all colorimetric Planckians here.
+pub fn planckian_exitance_w_per_m2_nm(nm: f64, temperature_k: f64) -> f64 {
+    const C1_W_M2: f64 = 3.741_771_852e-16;
+    let metres = nm * 1e-9;
+    let exponent = SECOND_RADIATION_CONSTANT_M_K / (metres * temperature_k);
+    C1_W_M2 * metres.powi(-5) / exponent.exp_m1() * 1e-9
+}
+
 /// Planckian spectrum at 380, 381 … 780 nm, relative to 560 nm.
 pub fn planckian_grid(temperature_k: f64) -> Vec<f64> {
     (0..GRID_POINTS).map(|i| planckian_relative(FIRST_NM + i as f64, temperature_k)).collect()

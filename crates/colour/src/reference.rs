@@ -77,6 +77,12 @@ impl Reference {
         )
     }
 
+    /// References of given spectra at 380, 381 … 780 nm, for those who want others than the standards' own (sums at a
+    /// coarser step, say).
+    pub fn of_grids(cct_k: f64, for_cri: &[f64], for_fidelity: &[f64]) -> Reference {
+        Reference::of(cct_k, &Tensor::of_grid(for_cri), &Tensor::of_grid(for_fidelity))
+    }
+
     fn of(cct_k: f64, for_cri: &Tensor, for_fidelity: &Tensor) -> Reference {
         let white_xyz = for_cri.xyz(Observer::Cie1931);
         let white = white_xyz.uv();
