@@ -26,9 +26,6 @@ mod transposed;
 mod units;
 mod vocabulary;
 
-#[cfg(test)]
-mod tests;
-
 pub use answers::{Answers, AxisUnit, Decimal, Ordinate, Per};
 pub use path::{MAX_FILE_BYTES, read_path};
 pub use reading::{DarkEstimate, Facts, Outcome, QUANTITIES, Question, Raw, ReadSpectrum, Reading};

@@ -206,6 +206,12 @@ pub(super) fn assign(
         })
         .filter(|&index| width > 200 || !column(index).is_empty())
         .collect();
+    // Columns without a single number are read when there is nothing else, to say so.
+    let values = if values.is_empty() {
+        (0..width).filter(|index| !axes.contains(index) && layout.index != Some(*index)).collect()
+    } else {
+        values
+    };
     layout.values = values.len();
     let axis_of = |value: usize| -> Option<usize> {
         if answers.start_nm.is_some() {
@@ -284,6 +290,13 @@ fn axes_by_numbers(width: usize, column: &dyn Fn(usize) -> Column, header: &Head
         return if pairs { (0..width).step_by(2).collect() } else { vec![0] };
     }
     // An axis behind a column of row numbers, or the last column, or any that is in order.
+    // Numbers in strict order are an axis even where they mean no light.
+    let strict = |one: &Column| {
+        one.values.len() == one.rows
+            && one.rows >= 5
+            && (one.values.windows(2).all(|pair| pair[1] > pair[0])
+                || one.values.windows(2).all(|pair| pair[1] < pair[0]))
+    };
     let candidates = std::iter::once(1).chain(std::iter::once(width - 1)).chain(2..width.min(50));
     for index in candidates {
         let one = column(index);
@@ -291,7 +304,11 @@ fn axes_by_numbers(width: usize, column: &dyn Fn(usize) -> Column, header: &Head
             return vec![index];
         }
     }
-    Vec::new()
+    if strict(&first) && !says_index(0) && !value_named(0) && !first.counts_rows() {
+        vec![0]
+    } else {
+        Vec::new()
+    }
 }
 
 /// Sets aside what the header calls no emission, dark, reference, raw or uncertain, as long as something remains.

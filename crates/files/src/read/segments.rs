@@ -30,9 +30,10 @@ impl Block {
     }
 }
 
-/// The longest run of rows without a line of text or a blank between.
+/// The longest run of rows without a line of text or a blank between; all rows when there are only scraps.
 pub(super) fn longest_run(table: &Table<'_>) -> Range<usize> {
-    runs(table).into_iter().max_by_key(ExactSizeIterator::len).unwrap_or(0..0)
+    let longest = runs(table).into_iter().max_by_key(ExactSizeIterator::len).unwrap_or(0..0);
+    if longest.len() < LEAST_ROWS { 0..table.rows.len() } else { longest }
 }
 
 fn runs(table: &Table<'_>) -> Vec<Range<usize>> {

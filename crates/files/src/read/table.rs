@@ -62,10 +62,12 @@ impl From<OpenQuote> for TableError {
 }
 
 impl<'a> Table<'a> {
-    /// Cell `column` of `row`; missing beyond the row's end.
+    /// Cell `column` of `row`; missing beyond the row's or the table's end.
     pub(super) fn at(&self, row: usize, column: usize) -> Cell {
-        let row = &self.rows[row];
-        if column < row.len as usize { self.cells[row.start as usize + column] } else { Cell::Missing }
+        match self.rows.get(row) {
+            Some(row) if column < row.len as usize => self.cells[row.start as usize + column],
+            _ => Cell::Missing,
+        }
     }
 
     /// Cells in `row`.
@@ -73,10 +75,20 @@ impl<'a> Table<'a> {
         self.rows[row].len as usize
     }
 
-    /// The lines of text directly before `row`, back to the row before it.
+    /// The file line of `row`; 1 when there is no such row.
+    pub(super) fn line(&self, row: usize) -> usize {
+        self.rows.get(row).map_or(1, |row| row.line as usize)
+    }
+
+    /// The lines of text directly before `row`, back to the row before it; all of them when there are no rows.
     pub(super) fn texts_before(&self, row: usize) -> &[TextLine<'a>] {
-        let from = if row == 0 { 0 } else { self.rows[row - 1].texts as usize };
-        &self.texts[from.min(self.texts.len())..(self.rows[row].texts as usize).min(self.texts.len())]
+        let until =
+            self.rows.get(row).map_or(self.texts.len(), |row| row.texts as usize).min(self.texts.len());
+        let from = row
+            .checked_sub(1)
+            .and_then(|before| self.rows.get(before))
+            .map_or(0, |before| before.texts as usize);
+        &self.texts[from.min(until)..until]
     }
 
     /// A table made from columns of numbers and their labels, as if it had been written upright.
@@ -215,9 +227,10 @@ impl<'a> Table<'a> {
     /// Tries the lines of text inside the table with the other separators.
     fn read_otherwise(&mut self, dialect: &Dialect) {
         let (Some(first), true) = (self.rows.first().map(|row| row.line), self.width > 1) else { return };
+        let mut before = 0;
         let mut found: Vec<(usize, Vec<Cell>)> = Vec::new();
         for (index, text) in self.texts.iter().enumerate() {
-            if text.line < first || is_comment(text.text) || text.text.len() > 10_000 {
+            if is_comment(text.text) || text.text.len() > 10_000 {
                 continue;
             }
             for other in Separator::ALL {
@@ -227,10 +240,15 @@ impl<'a> Table<'a> {
                 let mut row = Vec::new();
                 read_row(text.text, &Dialect { either_mark: true, ..dialect.clone() }, other, &mut row);
                 if row.len() == self.width && count(&row) == (self.width, 0) {
+                    before += usize::from(text.line < first);
                     found.push((index, row));
                     break;
                 }
             }
+        }
+        // A few numbers above the table are notes.
+        if before < 5 {
+            found.drain(..before);
         }
         if found.len() < 2 {
             return;

@@ -109,7 +109,7 @@ fn read_into(draft: &mut Draft, stem: &str, text: &str, answers: &Answers) -> Re
             header.note(text.text);
         }
     }
-    draft.facts.first_data_line = table.rows[parts[0].first_row()].line as usize;
+    draft.facts.first_data_line = table.line(parts[0].first_row());
     draft.facts.rows = parts.iter().map(Block::len).sum();
     let places: Vec<usize> = (1..=table.width).collect();
     read_table(draft, stem, &table, &parts, &header, &layout, &dialect, answers, &places)
@@ -269,7 +269,7 @@ fn read_table(
             let many = layout.series.len() * parts.len() > 1;
             let label = if many { format!("{name:?}: ") } else { String::new() };
             if let Some(failure) = unusable(&samples) {
-                let line = table.rows.get(block.first_row()).map_or(0, |row| row.line as usize);
+                let line = table.line(block.first_row());
                 failures.push((
                     if samples.first_bad_line > 0 { samples.first_bad_line } else { line },
                     format!("{label}{failure}"),
