@@ -7,6 +7,7 @@
 //! Out of scope: nothing is fetched, executed or expanded; spreadsheets, pictures and archives are refused.
 
 mod answers;
+mod axis;
 mod columns;
 mod convert;
 mod decode;
@@ -15,10 +16,12 @@ mod header;
 mod judge;
 mod number;
 mod path;
+mod questions;
 mod reading;
 mod samples;
 mod segments;
 mod sniff;
+mod spectrum;
 mod split;
 mod table;
 mod text;

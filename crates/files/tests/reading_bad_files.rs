@@ -102,7 +102,9 @@ fn refused() -> Vec<Case> {
         case("words in a fifth of the rows", every(4, "not a row"), Refused, "unreadable"),
         case(
             "words in a third of the values",
-            written(|nm| Some(if nm as u32 % 3 == 0 { "error".into() } else { format!("{:.4}", fern(nm)) })),
+            written(|nm| {
+                Some(if (nm as u32).is_multiple_of(3) { "error".into() } else { format!("{:.4}", fern(nm)) })
+            }),
             Refused,
             "unreadable",
         ),
@@ -261,7 +263,7 @@ fn warned() -> Vec<Case> {
             Warned,
             "UTF-8",
         ),
-        case("NUL bytes at the end", [head(good.clone()).as_bytes(), &[0; 64]].concat(), Warned, "control"),
+        case("NUL bytes at the end", [head(good.clone()).as_bytes(), &[0; 64]].concat(), Warned, "Control"),
         case(
             "a broken character at the end",
             [head(good.clone()).as_bytes(), b"# \xc3"].concat(),
@@ -336,7 +338,7 @@ fn what_is_no_plain_file_is_refused_without_waiting() {
         }
         let locked = folder.path().join("locked.csv");
         std::fs::write(&locked, rows(",")).unwrap();
-        std::fs::set_permissions(&locked, std::fs::Permissions::from_mode(0)).unwrap();
+        std::fs::set_permissions(&locked, std::fs::Permissions::from_mode(0o000)).unwrap();
         // A superuser may read everything.
         if std::fs::File::open(&locked).is_err() {
             refused(&locked, "permission");

@@ -300,7 +300,8 @@ fn axes_by_numbers(width: usize, column: &dyn Fn(usize) -> Column, header: &Head
     let candidates = std::iter::once(1).chain(std::iter::once(width - 1)).chain(2..width.min(50));
     for index in candidates {
         let one = column(index);
-        if one.ordered() && fits(index, &one) {
+        let leaves_values = width > 2 || index == 0 || !first.counts_rows();
+        if one.ordered() && fits(index, &one) && leaves_values {
             return vec![index];
         }
     }

@@ -65,7 +65,7 @@ pub(super) fn ordinate_sentences(ordinate: Ordinate, per: Per) -> Vec<String> {
         Per::Nm => {}
         Per::Ev => sentences.push("Values converted from per eV to per nm (multiplied by E²/hc).".to_owned()),
         Per::Cm1 => {
-            sentences.push("Values converted from per cm⁻¹ to per nm (multiplied by 10⁷/λ²).".to_owned())
+            sentences.push("Values converted from per cm⁻¹ to per nm (multiplied by 10⁷/λ²).".to_owned());
         }
     }
     sentences

@@ -134,7 +134,7 @@ fn narrow<'a>(bytes: &'a [u8], name: &'static str) -> Result<Decoded<'a>, String
     if controls > 0 {
         decoded
             .warnings
-            .push(format!("{controls} bytes are control characters, which text does not hold: damaged?"));
+            .push(format!("Control characters, which text does not hold, were found ({controls}): damaged?"));
     }
     Ok(decoded)
 }

@@ -16,6 +16,8 @@ const MARK_COLUMNS: usize = 64;
 pub(super) enum Doubt {
     /// Commas that may be decimal marks or group thousands; the line of the first.
     Commas(usize),
+    /// Points that may group thousands beside whole numbers; the line of the first.
+    Points(usize),
     /// Points and commas both mark decimals, from this line on.
     MarksChange(usize),
     /// Every comma separates, or every second one is a decimal mark.
@@ -33,6 +35,8 @@ pub(super) struct Dialect {
     /// Cells written with the other decimal mark are read by their own mark.
     pub(super) either_mark: bool,
     pub(super) assumptions: Vec<String>,
+    /// No line looked at holds numbers under any separator.
+    pub(super) barren: bool,
 }
 
 /// Chooses the dialect of `text`.
@@ -71,6 +75,9 @@ pub(super) fn choose(text: &str, answers: &Answers) -> Result<Dialect, OpenQuote
         doubt: None,
         either_mark: false,
         assumptions: Vec::new(),
+        barren: scores
+            .iter()
+            .all(|(_, score)| score.numbers == 0 || score.rows + score.singles + score.wide == 0),
     };
     if separator == Separator::Comma
         && let Some(pairs) = comma_pairs(lines, width, answers)
@@ -111,7 +118,7 @@ fn sample(text: &str) -> Result<Vec<(usize, &str)>, OpenQuote> {
         let (number, line) = line?;
         if sample.len() >= HEAD_LINES {
             later += 1;
-            if !later.is_multiple_of(1000) || sample.len() >= HEAD_LINES + 2000 {
+            if !later.is_multiple_of(100) || sample.len() >= HEAD_LINES + 4000 {
                 continue;
             }
         }
@@ -252,6 +259,12 @@ struct Marks {
     first_perhaps: usize,
 }
 
+impl Marks {
+    const fn numbers(&self) -> usize {
+        self.plain + self.point + self.comma + self.perhaps_point + self.perhaps_comma
+    }
+}
+
 fn decide_decimal(text: &str, dialect: &mut Dialect, answers: &Answers) -> Result<(), OpenQuote> {
     let columns = count_marks(text, dialect)?;
     let total = |value: fn(&Marks) -> usize| columns.iter().map(value).sum::<usize>();
@@ -305,8 +318,16 @@ fn decide_decimal(text: &str, dialect: &mut Dialect, answers: &Answers) -> Resul
             dialect.decimal = if plain { Decimal::Point } else { Decimal::Comma };
             dialect.doubt = Some(Doubt::Commas(first(|m| m.first_perhaps)));
         }
-    } else if perhaps_point > 0 {
-        dialect.decimal = Decimal::Point;
+    } else if dialect.separator.leaves_commas()
+        && let Some(column) = columns
+            .iter()
+            .skip(1)
+            .find(|m| m.perhaps_point > 1 && m.plain > 1 && m.numbers() == m.perhaps_point + m.plain)
+        && columns[0].perhaps_point == 0
+    {
+        // 999 and 1.001 in one column: whole numbers with grouped thousands as likely as decimals.
+        dialect.decimal = Decimal::Comma;
+        dialect.doubt = Some(Doubt::Points(column.first_perhaps));
     }
     Ok(())
 }
@@ -315,11 +336,11 @@ fn decide_decimal(text: &str, dialect: &mut Dialect, answers: &Answers) -> Resul
 fn count_marks(text: &str, dialect: &Dialect) -> Result<Vec<Marks>, OpenQuote> {
     let mut columns: Vec<Marks> = vec![Marks::default(); dialect.width.clamp(1, MARK_COLUMNS)];
     let last = columns.len() - 1;
-    // Without a comma inside cells there is nothing to decide.
-    if !dialect.separator.leaves_commas() && !text.contains('"') || !text.contains(',') {
+    // Without marks inside cells there is nothing to decide.
+    if !dialect.separator.leaves_commas() && !text.contains('"') || !text.contains([',', '.']) {
         return Ok(columns);
     }
-    let mut row: Vec<(Mark, bool)> = Vec::new();
+    let mut row: Vec<(Option<Mark>, bool)> = Vec::new();
     for line in Lines::new(text) {
         let (number, line) = line?;
         if line.len() < 2 || is_comment(line) {
@@ -330,10 +351,10 @@ fn count_marks(text: &str, dialect: &Dialect) -> Result<Vec<Marks>, OpenQuote> {
         cells(line, dialect.separator, |cell| {
             match mark(cell, dialect.separator.spaces_group()) {
                 Some(mark) => row.push((
-                    mark,
+                    Some(mark),
                     cell.contains(',') && cell.contains('.') || cell.matches([',', '.']).count() > 1,
                 )),
-                None if is_missing(cell) => row.push((Mark::None, false)),
+                None if is_missing(cell) => row.push((None, false)),
                 None => words = true,
             }
             !words && row.len() < 4096
@@ -350,19 +371,23 @@ fn count_marks(text: &str, dialect: &Dialect) -> Result<Vec<Marks>, OpenQuote> {
                 }
             };
             match mark {
-                Mark::None => column.plain += 1,
-                Mark::Point => {
+                None => {}
+                Some(Mark::None) => column.plain += 1,
+                Some(Mark::Point) => {
                     column.point += 1;
                     column.point_groups += groups;
                     note(&mut column.first_point);
                 }
-                Mark::Comma => {
+                Some(Mark::Comma) => {
                     column.comma += 1;
                     column.comma_groups += groups;
                     note(&mut column.first_comma);
                 }
-                Mark::PerhapsPoint => column.perhaps_point += 1,
-                Mark::PerhapsComma => {
+                Some(Mark::PerhapsPoint) => {
+                    column.perhaps_point += 1;
+                    note(&mut column.first_perhaps);
+                }
+                Some(Mark::PerhapsComma) => {
                     column.perhaps_comma += 1;
                     note(&mut column.first_perhaps);
                 }

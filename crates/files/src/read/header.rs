@@ -46,7 +46,10 @@ impl Header {
         let mut used = above.len();
         for (index, line) in above.iter().enumerate().rev().take(MAX_ROWS) {
             let Some(cells) = fitting_cells(line.text, separator, width, indexed) else { break };
-            if !accepts(&cells, &rows, &above[..index], separator, width) {
+            // Rows between the axis' name and the numbers belong to the header, whatever they hold.
+            if !accepts(&cells, &rows, &above[..index], separator, width)
+                && !names_axis_above(&above[..index], separator, width, indexed, MAX_ROWS - rows.len())
+            {
                 break;
             }
             rows.insert(0, cells);
@@ -226,6 +229,23 @@ fn fitting_cells(line: &str, separator: Separator, width: usize, indexed: bool) 
         cells.resize(width, String::new());
     }
     (cells.len() == width && cells.iter().any(|cell| !cell.is_empty())).then_some(cells)
+}
+
+/// Whether one of the lines directly above, all of the table's width, names an axis in its cells.
+fn names_axis_above(
+    above: &[TextLine<'_>],
+    separator: Separator,
+    width: usize,
+    indexed: bool,
+    most: usize,
+) -> bool {
+    width > 1
+        && above
+            .iter()
+            .rev()
+            .take(most)
+            .map_while(|line| fitting_cells(line.text, separator, width, indexed))
+            .any(|cells| cells.iter().any(|cell| axis_hint(cell).is_some()))
 }
 
 /// Whether a line of cells is a header row rather than a line of notes. `below` are the header rows already taken.

@@ -184,16 +184,31 @@ fn negatives(nm: &[f64], above: &[f64], found: &mut Judgement) {
     found.negative_area = if positive > 0.0 { negative / positive } else { f64::INFINITY };
     let most = 2 * below > above.len();
     found.mostly_negative = found.negative_area > 1.0 || (most && found.negative_area > 0.5);
-    if found.dark.is_some_and(|dark| dark.level < 0.0 || dark.of_peak <= DARK_OF_PEAK) || found.dark.is_none()
-    {
-        if found.negative_area > NEGATIVE_AREA || -lowest > 0.05 * highest {
-            found.warnings.push(format!(
-                "{below} of {} values are negative, {:.1} % of the area; they are kept",
-                above.len(),
-                100.0 * found.negative_area.min(9.99)
-            ));
-        }
+    // Noise about zero is half negative and must stay: its negative area is 0.4 standard deviations (half-normal mean, half
+    // the time).
+    let noise = noise(nm, above);
+    let by_noise = 0.4 * noise * (nm[nm.len() - 1] - nm[0]);
+    let large = negative > (NEGATIVE_AREA * positive).max(1.5 * by_noise);
+    let deep = -lowest > (0.02 * highest).max(5.5 * noise);
+    if large || deep {
+        let percent = 100.0 * found.negative_area.min(9.99);
+        found.warnings.push(format!(
+            "{below} of {} values are negative, {percent:.1} % of the area; they are kept",
+            above.len()
+        ));
     }
+}
+
+/// Standard deviation of sample-to-sample noise, from the median size of second differences against the line between
+/// neighbours (variance 1.5 σ² on even steps).
+fn noise(nm: &[f64], above: &[f64]) -> f64 {
+    let mut bends: Vec<f64> = (1..nm.len().saturating_sub(1))
+        .map(|index| {
+            let share = (nm[index] - nm[index - 1]) / (nm[index + 1] - nm[index - 1]);
+            (above[index] - above[index - 1] - share * (above[index + 1] - above[index - 1])).abs()
+        })
+        .collect();
+    1.4826 * median(&mut bends) / 1.5_f64.sqrt()
 }
 
 /// Less than 5 % between nearly the least and nearly the largest value.
@@ -220,6 +235,11 @@ fn spike(nm: &[f64], above: &[f64]) -> Option<String> {
     let roughest =
         (1..count - 1).filter(|&other| !near(other)).map(|other| excess(other).abs()).fold(0.0, f64::max);
     let rest = (0..count).filter(|&other| other != index).map(|other| above[other]).fold(0.0, f64::max);
+    // A narrow line on nothing is the emission itself.
+    let emission = (0..count).filter(|&other| !near(other)).map(|other| above[other]).fold(0.0, f64::max);
+    if emission < 0.02 * above[index] || emission < 3.0 * roughest {
+        return None;
+    }
     // Both neighbours lie near what surrounds them, so the feature is one sample wide.
     let shoulders = above[index - 1].max(above[index + 1]);
     let single = own > 0.5 * (above[index] - shoulders.min(above[index])).abs() && above[index] > shoulders;

@@ -83,7 +83,6 @@ pub(super) fn is_missing(token: &str) -> bool {
             | "#name?"
             | "—"
             | "–"
-            | "x"
             | "missing"
     )
 }

@@ -57,7 +57,7 @@ pub(super) fn find(text: &str, dialect: &Dialect) -> Option<Turned> {
     if rows.len() < 2 {
         return None;
     }
-    let axis = rows.iter().position(|row| is_axis(row))?;
+    let axis = rows.iter().position(is_axis)?;
     let length = rows[axis].cells.len();
     let labelled = !rows[axis].label.is_empty();
     let mut turned =

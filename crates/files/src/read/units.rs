@@ -131,6 +131,51 @@ pub(super) fn axis_hint(text: &str) -> Option<AxisHint> {
     }
     let folded = fold(text);
     let head = folded.trim_start_matches(|c: char| !c.is_alphanumeric());
+    // A wavelength of something is a note, not the axis.
+    let of_something = |word: &&str| {
+        matches!(
+            *word,
+            "peak"
+                | "dominant"
+                | "centre"
+                | "center"
+                | "central"
+                | "centroid"
+                | "range"
+                | "start"
+                | "end"
+                | "stop"
+                | "first"
+                | "last"
+                | "min"
+                | "max"
+                | "minimum"
+                | "maximum"
+                | "resolution"
+                | "step"
+                | "interval"
+                | "calibration"
+                | "excitation"
+                | "laser"
+                | "accuracy"
+                | "offset"
+                | "shift"
+                | "mean"
+                | "bereich"
+                | "plage"
+                | "spitzen"
+                | "increment"
+                | "count"
+                | "counts"
+                | "number"
+                | "from"
+                | "to"
+                | "correction"
+        )
+    };
+    if words(&folded).iter().any(of_something) && !vocabulary::names_wavenumber(&folded) {
+        return None;
+    }
     let unit = unit_inside(text);
     let mut lead = folded.split(['(', '[', '/', ',', ';']).next().unwrap_or("").to_owned();
     if lead.trim().is_empty() {
