@@ -94,7 +94,7 @@ pub(crate) fn participants(problem: &Problem) -> (Vec<usize>, Vec<Tensor>, Vec<(
         let (lo, hi) = problem.bound(i);
         let x = xyz2(&t);
         let dark =
-            !(t.radiant_power() > 0.0) || x.iter().sum::<f64>() < 1e-9 || !x.iter().all(|v| v.is_finite());
+            t.radiant_power() <= 0.0 || x.iter().any(|v| !v.is_finite()) || x.iter().sum::<f64>() < 1e-9;
         let hi = if dark { lo } else { hi.min(1.0) };
         if hi > 0.0 {
             used.push(i);

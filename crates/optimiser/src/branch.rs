@@ -7,7 +7,7 @@
 
 use crate::answer::Stop;
 use crate::ask::{Aim, Ask, Work, outward};
-use crate::local::{Local, MET, Searcher};
+use crate::local::{Local, MET, search};
 use crate::models::{MOST, Model};
 use crate::problem::Control;
 use crate::simplex::{Lp, LpEnd};
@@ -29,6 +29,8 @@ pub(crate) struct Effort {
     pub(crate) boxes: u64,
     pub(crate) until: Option<Instant>,
     pub(crate) gap: f64,
+    /// A value found elsewhere that has to be beaten.
+    pub(crate) floor: f64,
 }
 
 /// What the proof found.
@@ -125,14 +127,24 @@ fn examine(ask: &Ask, node: &Node, beat: f64, tighten: bool, w: &mut BoxWork) ->
     w.row.clear();
     w.row.resize(d, 0.0);
     let mut hint = Vec::new();
-    let rounds = if tighten { 3 } else { 1 };
+    let rounds = if !tighten {
+        1
+    } else if d <= 4 {
+        3
+    } else {
+        2
+    };
     for round in 0..rounds {
         let centre: Vec<f64> = (0..d).map(|j| 0.5 * (low[j] + high[j])).collect();
         let radius: Vec<f64> = (0..d).map(|j| 0.5 * (high[j] - low[j])).collect();
         ask.over_box(&centre, &radius, &mut w.work);
         w.lp.begin(&low, &high);
         for r in &ask.space.rows {
-            w.lp.row(&r.a, r.b);
+            // rows that cannot bind inside the box only cost time
+            let most: f64 = (0..d).map(|j| (r.a[j] * low[j]).max(r.a[j] * high[j])).sum();
+            if most > r.b {
+                w.lp.row(&r.a, r.b);
+            }
         }
         for goal in &ask.goals {
             let m = ask.model(goal.metric, &w.work);
@@ -276,7 +288,8 @@ pub(crate) fn prove(ask: &Ask, best: Option<Local>, effort: Effort, control: &Co
     let threads = rayon::current_num_threads().max(1);
     let mut own = BoxWork::default();
     let beat_of = |best: &Option<Local>| {
-        best.as_ref().map_or(f64::NEG_INFINITY, |b| b.objective + gap_at(b.objective, effort.gap))
+        let value = best.as_ref().map_or(f64::NEG_INFINITY, |b| b.objective).max(effort.floor);
+        if value.is_finite() { value + gap_at(value, effort.gap) } else { value }
     };
     while let Some(top) = heap.peek() {
         let beat = beat_of(&best);
@@ -304,19 +317,20 @@ pub(crate) fn prove(ask: &Ask, best: Option<Local>, effort: Effort, control: &Co
         }
         boxes += batch.len() as u64;
         batches += 1;
-        let results: Vec<Option<Examined>> = if batch.len() >= 8 && threads > 1 && ask.ces.is_some() {
-            batch
-                .par_iter()
-                .with_min_len(4)
-                .map_init(BoxWork::default, |w, n| examine(ask, n, beat, true, w))
-                .collect()
-        } else {
-            batch.iter().map(|n| examine(ask, n, beat, true, &mut own)).collect()
-        };
+        let results: Vec<Option<Examined>> =
+            if batch.len() >= 8 && threads > 1 && (ask.ces.is_some() || ask.space.d >= 4) {
+                batch
+                    .par_iter()
+                    .with_min_len(4)
+                    .map_init(BoxWork::default, |w, n| examine(ask, n, beat, true, w))
+                    .collect()
+            } else {
+                batch.iter().map(|n| examine(ask, n, beat, true, &mut own)).collect()
+            };
         // A better blend may show up where the relaxation points.
         let tries = if batches <= 8 || batches.is_multiple_of(8) { 2 } else { 0 };
         for r in results.iter().flatten().filter(|r| !r.hint.is_empty()).take(tries) {
-            let found = Searcher::new(ask, false).run(&r.hint, &mut own.work);
+            let found = search(ask, false, &r.hint, &mut own.work);
             if found.short <= MET && best.as_ref().is_none_or(|b| found.objective > b.objective) {
                 best = Some(found);
             }
@@ -340,15 +354,11 @@ pub(crate) fn prove(ask: &Ask, best: Option<Local>, effort: Effort, control: &Co
         }
     }
     let open = heap.peek().map_or(f64::NEG_INFINITY, |n| n.bound);
-    let upper = match &best {
-        Some(_) => open.max(beat_of(&best)),
-        None => open,
-    };
+    let upper = open.max(beat_of(&best));
     Proof { best, upper, boxes, stop }
 }
 
 /// A bound from one box: the whole polytope, without splitting.
-#[expect(dead_code, reason = "the choice of k of N will screen with it")]
 pub(crate) fn root_bound(ask: &Ask, beat: f64, w: &mut BoxWork) -> f64 {
     let node = Node { bound: f64::INFINITY, id: 0, low: ask.space.low.clone(), high: ask.space.high.clone() };
     examine(ask, &node, beat, false, w).map_or(f64::NEG_INFINITY, |e| e.bound)

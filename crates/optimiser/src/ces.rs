@@ -32,6 +32,7 @@ const RED: [f64; 3] = [1.0, -12.0 / 11.0, 1.0 / 11.0];
 const YELLOW: [f64; 3] = [1.0 / 9.0, 1.0 / 9.0, -2.0 / 9.0];
 const DIVISOR: [f64; 3] = [1.0, 1.0, 1.05];
 const BETA: f64 = 0.0228;
+const ONES: Lane = [1.0; CES];
 /// Fidelity points per unit of mean colour difference (CIE 224:2017).
 const FACTOR: f64 = 6.73;
 
@@ -308,7 +309,6 @@ impl CesForms {
             omega[m] = if BOX { 0.5 * (lo + hi) } else { 1.0 / white[m] };
             stray[m] = 0.5 * (hi - lo);
         }
-        let h = &self.view.cones;
         self.adapt::<F, BOX>(centre, radius, &white, &omega, &stray, w);
         self.respond::<F, BOX>(w);
         self.appear::<F>(w);
@@ -321,28 +321,7 @@ impl CesForms {
             (true, false) => self.project::<true, false>(wants, w),
             (true, true) => self.project::<true, true>(wants, w),
         }
-        // Coefficients on the ratios gₘ, then on the free directions.
-        let gather =
-            |co: &Lanes3, weight: Option<&Lane>, slope: &Lanes3, g: &Lanes3, grad: &mut [f64; MOST]| {
-                let mut on = [[0.0; CES]; 3];
-                for m in 0..3 {
-                    for i in 0..CES {
-                        let s = h[0][m] * co[0][i] * slope[0][i]
-                            + h[1][m] * co[1][i] * slope[1][i]
-                            + h[2][m] * co[2][i] * slope[2][i];
-                        on[m][i] = omega[m] * s * weight.map_or(1.0, |w| w[i]);
-                    }
-                }
-                let by_white: [f64; 3] = std::array::from_fn(|m| dot::<F, CES>(&on[m], &g[m]));
-                for j in 0..d {
-                    let mut s = 0.0;
-                    for m in 0..3 {
-                        s += dot::<F, CES>(&on[m], &self.along[j][m]) - by_white[m] * self.white_along[j][m];
-                    }
-                    grad[j] = s;
-                }
-            };
-        gather(&w.rf_co, Some(&self.weight), &w.slope, &w.g, &mut out.rf.grad);
+        self.gather::<F>(&w.rf_co, &self.weight, &omega, w, &mut out.rf.grad);
         for g in &mut out.rf.grad[..d] {
             *g = -*g;
         }
@@ -350,12 +329,13 @@ impl CesForms {
         out.rf.lower = if !BOX {
             out.rf.upper
         } else if wants.rf_high {
-            -dot::<F, CES>(&w.rf_high, &self.weight)
+            let high = dot::<F, CES>(&w.rf_high, &self.weight);
+            if high.is_finite() { -high } else { f64::NEG_INFINITY }
         } else {
             f64::NEG_INFINITY
         };
         if wants.rg {
-            gather(&w.rg_co, None, &w.slope, &w.g, &mut out.rg.grad);
+            self.gather::<F>(&w.rg_co, &ONES, &omega, w, &mut out.rg.grad);
             let means = self.bin_means(&w.jab[1], &w.jab[2]);
             let scale = 100.0 / self.reference_area;
             let value = scale * area(&means);
@@ -376,6 +356,43 @@ impl CesForms {
                     out.rg = Model::default();
                 }
             }
+        }
+    }
+
+    /// Coefficients on the cone responses, brought to the ratios gₘ and then to the free directions.
+    // A function, not a closure: closures are not inlined where the processor's features are known, and fused
+    // multiply-adds outside of it are calls into the library.
+    #[inline(always)]
+    fn gather<const F: bool>(
+        &self,
+        co: &Lanes3,
+        weight: &Lane,
+        omega: &[f64; 3],
+        w: &CesWork,
+        grad: &mut [f64; MOST],
+    ) {
+        let h = &self.view.cones;
+        let mut on = [[0.0; CES]; 3];
+        for i in 0..CES {
+            let (s0, s1, s2) = (
+                co[0][i] * w.slope[0][i] * weight[i],
+                co[1][i] * w.slope[1][i] * weight[i],
+                co[2][i] * w.slope[2][i] * weight[i],
+            );
+            on[0][i] = omega[0] * (h[0][0] * s0 + h[1][0] * s1 + h[2][0] * s2);
+            on[1][i] = omega[1] * (h[0][1] * s0 + h[1][1] * s1 + h[2][1] * s2);
+            on[2][i] = omega[2] * (h[0][2] * s0 + h[1][2] * s1 + h[2][2] * s2);
+        }
+        let mut by_white = [0.0; 3];
+        for m in 0..3 {
+            by_white[m] = dot::<F, CES>(&on[m], &w.g[m]);
+        }
+        for j in 0..self.along.len() {
+            let mut s = 0.0;
+            for m in 0..3 {
+                s += dot::<F, CES>(&on[m], &self.along[j][m]) - by_white[m] * self.white_along[j][m];
+            }
+            grad[j] = s;
         }
     }
 

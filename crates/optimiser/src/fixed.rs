@@ -3,7 +3,7 @@
 use crate::answer::{Binding, Grade, Shortfall, Solution, Stop, Values};
 use crate::ask::{Aim, Ask, Wanted, Work};
 use crate::branch::{Effort, GOAL_GAP, prove};
-use crate::local::{Dice, Local, MET, Searcher};
+use crate::local::{Dice, Local, MET, search};
 use crate::problem::{Control, Metric, Problem};
 use crate::simplex::{Lp, LpEnd};
 use crate::space::NoSpace;
@@ -42,7 +42,7 @@ impl Plan {
     }
 
     fn effort(&self) -> Effort {
-        Effort { boxes: self.boxes, until: self.until, gap: self.gap }
+        Effort { boxes: self.boxes, until: self.until, gap: self.gap, floor: f64::NEG_INFINITY }
     }
 }
 
@@ -123,7 +123,7 @@ pub(crate) fn solve_ask(ask: Ask, warm: &[Vec<f64>], plan: Plan, control: &Contr
             starts.push(dice.mixture(corners, d));
         }
     }
-    let run = |t: &Vec<f64>, work: &mut Work| Searcher::new(&ask, false).run(t, work);
+    let run = |t: &Vec<f64>, work: &mut Work| search(&ask, false, t, work);
     let found: Vec<Local> = if starts.len() >= 4 && ask.ces.is_some() {
         starts.par_iter().map_init(Work::default, |w, t| run(t, w)).collect()
     } else {
@@ -143,12 +143,12 @@ pub(crate) fn solve_ask(ask: Ask, warm: &[Vec<f64>], plan: Plan, control: &Contr
     if best.is_none() && !ask.goals.is_empty() {
         // look for any blend that meets the limits
         for t in &starts {
-            let l = Searcher::new(&ask, true).run(t, &mut work);
+            let l = search(&ask, true, t, &mut work);
             if nearest.as_ref().is_none_or(|n| l.short < n.short) {
                 nearest = Some(l.clone());
             }
             if l.short <= MET {
-                let again = Searcher::new(&ask, false).run(&l.t, &mut work);
+                let again = search(&ask, false, &l.t, &mut work);
                 best = Some(if again.short <= MET { again } else { l });
                 break;
             }

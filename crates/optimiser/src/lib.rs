@@ -7,25 +7,38 @@ mod answer;
 mod ask;
 mod branch;
 mod ces;
+mod choose;
+mod economy;
 mod fixed;
+mod frontier;
 mod gamut;
 mod infeasible;
 mod lanes;
 mod local;
+mod missing;
 mod models;
+mod packages;
 mod problem;
 mod quadratic;
+mod region;
 mod simplex;
 mod solve;
 mod space;
+mod table;
 mod tcs;
 
 pub use answer::{
     Binding, Grade, Infeasible, Nearest, Outcome, PROVEN_GAP, Reachable, Relaxation, Shortfall, Solution,
     Stop, Values,
 };
+pub use choose::{Choice, Chosen, MOST_SUBSETS, choose};
+pub use economy::{Dropped, Price, Requirement, drop_each, prices};
+pub use frontier::{FrontierPoint, Levels, frontier, most};
+pub use missing::{Family, Missing, Proposal, Trial, missing};
+pub use packages::{MOST_VECTORS, PackageAnswer, PackageChoice, PackageError, packages};
 pub use problem::{
     Budget, Control, DEFAULT_BOXES, Limits, LinearRow, Metric, Objective, Problem, ProblemError, ROUND_SIDES,
     Range, Region, Target, circle, ellipse,
 };
 pub use solve::solve;
+pub use table::{Table, table};

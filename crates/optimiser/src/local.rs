@@ -4,9 +4,9 @@
 //! variable at a high price keeps it solvable. The Hessian of the Lagrangian is built by damped BFGS (Powell 1978), steps are shortened on the
 //! exact penalty, and a second-order correction is tried before shortening.
 
-use crate::ask::{Aim, Ask, Goal, Work, scale};
+use crate::ask::{Aim, Ask, Work, scale};
 use crate::quadratic::{Qp, QpEnd};
-use crate::space::inner;
+use crate::space::{FreeRow, inner};
 
 /// Where a local search ended.
 #[derive(Clone, Debug)]
@@ -21,35 +21,50 @@ pub(crate) struct Local {
 /// Scaled shortfall that counts as met. The limits carry a margin inside that is larger.
 pub(crate) const MET: f64 = 1e-10;
 
-struct Point {
-    t: Vec<f64>,
-    f: f64,
-    df: Vec<f64>,
-    g: Vec<f64>,
-    dg: Vec<f64>,
+/// Values and slopes at a point.
+#[derive(Clone, Debug)]
+pub(crate) struct Point {
+    pub(crate) t: Vec<f64>,
+    /// What is minimised, scaled to about one.
+    pub(crate) f: f64,
+    pub(crate) df: Vec<f64>,
+    /// Limits, met when not negative, scaled.
+    pub(crate) g: Vec<f64>,
+    /// Their slopes, one limit after the other.
+    pub(crate) dg: Vec<f64>,
 }
 
-/// The search and its memory.
-pub(crate) struct Searcher<'a> {
+/// A smooth problem with linear rows that are kept exactly.
+pub(crate) trait Smooth {
+    /// Variables.
+    fn dims(&self) -> usize;
+    /// Rows a·t ≤ b.
+    fn rows(&self) -> &[FreeRow];
+    /// A length over which things change.
+    fn extent(&self) -> f64;
+    /// Values and slopes.
+    fn evaluate(&self, t: &[f64], work: &mut Work) -> Point;
+}
+
+/// A compiled fixed-white problem as a smooth one.
+pub(crate) struct OfAsk<'a> {
     ask: &'a Ask,
-    qp: Qp,
-    hessian: Vec<f64>,
     /// True: only meet the limits, whatever the objective.
     feasibility: bool,
     cost_scale: f64,
 }
 
-fn sides(goals: &[Goal]) -> usize {
-    goals.iter().map(|g| usize::from(g.low.is_some()) + usize::from(g.high.is_some())).sum()
-}
+impl Smooth for OfAsk<'_> {
+    fn dims(&self) -> usize {
+        self.ask.space.d
+    }
 
-impl<'a> Searcher<'a> {
-    pub(crate) fn new(ask: &'a Ask, feasibility: bool) -> Searcher<'a> {
-        let cost_scale = match &ask.aim {
-            Aim::LeastCost { c0, .. } => c0.abs().max(1e-12),
-            Aim::Rendering { metric, .. } => scale(*metric),
-        };
-        Searcher { ask, qp: Qp::default(), hessian: Vec::new(), feasibility, cost_scale }
+    fn rows(&self) -> &[FreeRow] {
+        &self.ask.space.rows
+    }
+
+    fn extent(&self) -> f64 {
+        (0..self.ask.space.d).map(|j| self.ask.space.high[j] - self.ask.space.low[j]).fold(1e-9, f64::max)
     }
 
     fn evaluate(&self, t: &[f64], work: &mut Work) -> Point {
@@ -70,8 +85,7 @@ impl<'a> Searcher<'a> {
                 }
             }
         };
-        let k = sides(&a.goals);
-        let (mut g, mut dg) = (Vec::with_capacity(k), Vec::with_capacity(k * d));
+        let (mut g, mut dg) = (Vec::new(), Vec::new());
         for goal in &a.goals {
             let m = a.model(goal.metric, work);
             let s = scale(goal.metric);
@@ -86,14 +100,40 @@ impl<'a> Searcher<'a> {
         }
         Point { t: t.to_vec(), f, df, g, dg }
     }
+}
 
-    fn short(p: &Point) -> f64 {
-        p.g.iter().fold(0.0, |s: f64, g| s.max(-g))
+/// Searches a compiled problem from a start inside its polytope.
+pub(crate) fn search(ask: &Ask, feasibility: bool, start: &[f64], work: &mut Work) -> Local {
+    let cost_scale = match &ask.aim {
+        Aim::LeastCost { c0, .. } => c0.abs().max(1e-12),
+        Aim::Rendering { metric, .. } => scale(*metric),
+    };
+    let smooth = OfAsk { ask, feasibility, cost_scale };
+    let p = Searcher::new(&smooth).run(start, work);
+    ask.at(&p.t, work);
+    Local { objective: ask.objective(&p.t, work), short: short(&p), t: p.t }
+}
+
+/// The search and its memory.
+pub(crate) struct Searcher<'a, S: Smooth> {
+    of: &'a S,
+    qp: Qp,
+    hessian: Vec<f64>,
+}
+
+/// Greatest shortfall of a limit.
+pub(crate) fn short(p: &Point) -> f64 {
+    p.g.iter().fold(0.0, |s: f64, g| s.max(-g))
+}
+
+impl<'a, S: Smooth> Searcher<'a, S> {
+    pub(crate) fn new(of: &'a S) -> Searcher<'a, S> {
+        Searcher { of, qp: Qp::default(), hessian: Vec::new() }
     }
 
     /// One quadratic programme; `shift` replaces the constraint values (second-order correction).
     fn step(&mut self, p: &Point, g: &[f64], price: f64) -> Option<Vec<f64>> {
-        let d = self.ask.space.d;
+        let d = self.of.dims();
         let k = g.len();
         let n = if k > 0 { d + 1 } else { d };
         self.qp.begin(n);
@@ -116,7 +156,7 @@ impl<'a> Searcher<'a> {
             }
             row[d] = 0.0;
         }
-        for r in &self.ask.space.rows {
+        for r in self.of.rows() {
             for j in 0..d {
                 row[j] = -r.a[j];
             }
@@ -128,10 +168,10 @@ impl<'a> Searcher<'a> {
     }
 
     /// Searches from a start inside the polytope.
-    pub(crate) fn run(&mut self, start: &[f64], work: &mut Work) -> Local {
-        let d = self.ask.space.d;
-        let extent: f64 = (0..d).map(|j| self.ask.space.high[j] - self.ask.space.low[j]).fold(1e-9, f64::max);
-        let mut p = self.evaluate(start, work);
+    pub(crate) fn run(&mut self, start: &[f64], work: &mut Work) -> Point {
+        let d = self.of.dims();
+        let extent = self.of.extent();
+        let mut p = self.of.evaluate(start, work);
         let slope = inner(&p.df, &p.df).sqrt().max(1e-3);
         self.hessian = vec![0.0; d * d];
         for j in 0..d {
@@ -147,19 +187,19 @@ impl<'a> Searcher<'a> {
             let step: Vec<f64> = x[..d].to_vec();
             let size = step.iter().fold(0.0, |m: f64, s| m.max(s.abs()));
             let slack = if k > 0 { x[d].max(0.0) } else { 0.0 };
-            let short = Self::short(&p);
+            let missed = short(&p);
             // multipliers of the rendering limits (the first constraint is the slack's sign)
             let lambda: Vec<f64> = (0..k).map(|c| self.qp.multipliers[c + 1]).collect();
             let wanted = 1.2 * lambda.iter().sum::<f64>();
-            if slack > 1e-9 && wanted > 0.9 * price && price < 1e7 && short > MET {
+            if slack > 1e-9 && wanted > 0.9 * price && price < 1e7 && missed > MET {
                 price *= 10.0;
             }
-            let merit = |p: &Point| p.f + price * Self::short(p);
+            let merit = |p: &Point| p.f + price * short(p);
             let curvature: f64 = (0..d)
                 .map(|i| (0..d).map(|j| step[i] * self.hessian[i * d + j] * step[j]).sum::<f64>())
                 .sum();
-            let predicted = -inner(&p.df, &step) + price * (short - slack);
-            if size < 1e-11 * extent || (predicted.abs() < 1e-13 && curvature < 1e-13) {
+            let predicted = -inner(&p.df, &step) + price * (missed - slack);
+            if size < 1e-11 * extent || (predicted.abs() < 1e-11 && curvature < 1e-11) {
                 break;
             }
             let here = merit(&p);
@@ -167,7 +207,7 @@ impl<'a> Searcher<'a> {
             let mut next: Option<Point> = None;
             for tries in 0..14 {
                 let t: Vec<f64> = p.t.iter().zip(&step).map(|(t, s)| t + alpha * s).collect();
-                let q = self.evaluate(&t, work);
+                let q = self.of.evaluate(&t, work);
                 let gain = here - merit(&q);
                 if gain >= 1e-4 * alpha * predicted.max(0.0) - 1e-15 {
                     next = Some(q);
@@ -179,7 +219,7 @@ impl<'a> Searcher<'a> {
                         (0..k).map(|c| q.g[c] - inner(&p.dg[c * d..(c + 1) * d], &step)).collect();
                     if let Some(y) = self.step(&p, &corrected, price) {
                         let t: Vec<f64> = p.t.iter().zip(&y).map(|(t, s)| t + s).collect();
-                        let q = self.evaluate(&t, work);
+                        let q = self.of.evaluate(&t, work);
                         if here - merit(&q) >= 1e-4 * predicted.max(0.0) {
                             next = Some(q);
                             break;
@@ -205,7 +245,7 @@ impl<'a> Searcher<'a> {
             self.update(&p, &q, &lambda, fresh);
             fresh = false;
             p = q;
-            if gained < 1e-12 {
+            if gained < 1e-9 {
                 stalls += 1;
                 if stalls >= 3 {
                     break;
@@ -215,19 +255,18 @@ impl<'a> Searcher<'a> {
             }
         }
         self.polish(&mut p, work);
-        self.ask.at(&p.t, work);
-        Local { objective: self.ask.objective(&p.t, work), short: Self::short(&p), t: p.t }
+        p
     }
 
     /// Newton steps back onto limits missed by rounding.
     fn polish(&mut self, p: &mut Point, work: &mut Work) {
         for _ in 0..4 {
-            let short = Self::short(p);
-            if short <= MET || short > 1e-4 {
+            let missed = short(p);
+            if missed <= MET || missed > 1e-4 {
                 return;
             }
             let aimed: Vec<f64> = p.g.iter().map(|g| g - 1e-11).collect();
-            let d = self.ask.space.d;
+            let d = self.of.dims();
             for i in 0..d {
                 for j in 0..d {
                     self.hessian[i * d + j] = f64::from(i == j);
@@ -239,8 +278,8 @@ impl<'a> Searcher<'a> {
                 return;
             };
             let t: Vec<f64> = p.t.iter().zip(&x).map(|(t, s)| t + s).collect();
-            let q = self.evaluate(&t, work);
-            if Self::short(&q) >= short {
+            let q = self.of.evaluate(&t, work);
+            if short(&q) >= missed {
                 p.df = df;
                 return;
             }
