@@ -1,5 +1,6 @@
 //! Arguments that several commands share.
 
+use super::numbers;
 use clap::{Args, ValueEnum};
 use project::{Limit, Limits, Maximise, Region, WhiteSpec};
 use std::path::PathBuf;
@@ -77,13 +78,13 @@ pub struct AnswerArgs {
     #[arg(long, value_enum, value_name = "MARK")]
     pub decimal: Option<DecimalAnswer>,
     /// Value columns to read, counted from 1 with the axis as column 1
-    #[arg(long, value_name = "N,N", value_delimiter = ',', allow_hyphen_values = true)]
+    #[arg(long, value_name = "N,N", value_delimiter = ',', allow_hyphen_values = true, value_parser = numbers::count)]
     pub columns: Option<Vec<usize>>,
     /// First wavelength in nm, for a file without an axis
-    #[arg(long, value_name = "NM", requires = "step", allow_hyphen_values = true)]
+    #[arg(long, value_name = "NM", requires = "step", allow_hyphen_values = true, value_parser = numbers::positive)]
     pub start: Option<f64>,
     /// Distance between samples in nm, for a file without an axis
-    #[arg(long, value_name = "NM", requires = "start", allow_hyphen_values = true)]
+    #[arg(long, value_name = "NM", requires = "start", allow_hyphen_values = true, value_parser = numbers::number)]
     pub step: Option<f64>,
 }
 
@@ -119,7 +120,7 @@ pub struct EmitterArgs {
     #[arg(long, value_name = "FILE")]
     pub emitters: PathBuf,
     /// Optical watts per electrical watt, one fraction a column of the file
-    #[arg(long, value_name = "F,F", value_delimiter = ',', allow_hyphen_values = true)]
+    #[arg(long, value_name = "F,F", value_delimiter = ',', allow_hyphen_values = true, value_parser = numbers::fraction)]
     pub wall_plug: Option<Vec<f64>>,
 }
 
@@ -127,10 +128,10 @@ pub struct EmitterArgs {
 #[derive(Debug, Clone, Copy, Args)]
 pub struct TargetArgs {
     /// Target correlated colour temperature in K
-    #[arg(long, value_name = "K", allow_hyphen_values = true)]
+    #[arg(long, value_name = "K", allow_hyphen_values = true, value_parser = numbers::cct_k)]
     pub cct: f64,
     /// Target Duv, signed distance from the Planckian locus in CIE 1960 uv
-    #[arg(long, value_name = "D", default_value_t = 0.0, allow_hyphen_values = true)]
+    #[arg(long, value_name = "D", default_value_t = 0.0, allow_hyphen_values = true, value_parser = numbers::duv)]
     pub duv: f64,
 }
 
@@ -195,10 +196,10 @@ impl LimitArgs {
 #[derive(Debug, Clone, Copy, Default, Args)]
 pub struct BudgetArgs {
     /// Boxes the proof may examine; decides the answer, whatever the machine
-    #[arg(long, value_name = "N")]
+    #[arg(long, value_name = "N", allow_hyphen_values = true, value_parser = numbers::boxes)]
     pub budget_boxes: Option<u64>,
     /// Safety stop in seconds, reported as `stopped_by`
-    #[arg(long, value_name = "SECONDS", allow_hyphen_values = true)]
+    #[arg(long, value_name = "SECONDS", allow_hyphen_values = true, value_parser = numbers::positive)]
     pub budget: Option<f64>,
 }
 

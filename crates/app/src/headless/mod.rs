@@ -2,26 +2,55 @@
 //!
 //! Results go to the output stream, sentences to the error stream. The exit code is 0 when the work is done, 1 when
 //! the answer is "no" (an infeasible white, an open question) and 2 for bad input; several files end with the worst.
+//! The keys are documented in `docs/headless.md`.
 
+mod answer;
 mod args;
+mod asking;
 mod exit;
+mod files;
+mod measure;
+mod numbers;
+mod output;
+mod read;
+mod solve;
+mod usage;
 
 pub use args::{
-    AnswerArgs, AxisAnswer, BudgetArgs, DecimalAnswer, EmitterArgs, LimitArgs, MaximiseChoice,
-    OrdinateAnswer, OutputArgs, PerAnswer, SolvingArgs, TargetArgs,
+    AnswerArgs, AxisAnswer, BudgetArgs, DecimalAnswer, EmitterArgs, LimitArgs, MaximiseChoice, OrdinateAnswer,
+    OutputArgs, PerAnswer, SolvingArgs, TargetArgs,
 };
 pub use exit::{BadInput, Exit};
+pub use measure::MeasureArgs;
+pub use read::ReadArgs;
+pub use solve::SolveArgs;
 
-use clap::Parser;
+use clap::{Parser, Subcommand};
 use std::{ffi::OsString, path::PathBuf, process::ExitCode};
 
 /// White light sources from measured emitters: blend weights with proof, a ledger and a recipe.
+///
+/// Without a command the window opens, on the demonstration project or on what is named.
 #[derive(Debug, Parser)]
 #[command(name = "whitesmith", version, args_conflicts_with_subcommands = true)]
 pub struct Cli {
+    /// What to do without a window
+    #[command(subcommand)]
+    pub command: Option<Command>,
     /// A project, or spectra files, to open in the window
     #[arg(value_name = "PROJECT | FILES")]
     pub open: Vec<PathBuf>,
+}
+
+/// The headless commands.
+#[derive(Debug, Subcommand)]
+pub enum Command {
+    /// See [`ReadArgs`].
+    Read(ReadArgs),
+    /// See [`MeasureArgs`].
+    Measure(MeasureArgs),
+    /// See [`SolveArgs`].
+    Solve(Box<SolveArgs>),
 }
 
 /// Runs the program with its arguments (the first is its own name) and returns its exit code.
@@ -31,7 +60,39 @@ where
     T: Into<OsString> + Clone,
 {
     match Cli::try_parse_from(arguments) {
-        Ok(_) => Exit::Done.into(),
-        Err(error) => error.exit(),
+        Ok(cli) => perform(&cli).into(),
+        Err(error) => usage::answer(&error).into(),
+    }
+}
+
+fn perform(cli: &Cli) -> Exit {
+    match &cli.command {
+        Some(Command::Read(args)) => read::run(args),
+        Some(Command::Measure(args)) => measure::run(args),
+        Some(Command::Solve(args)) => solve::run(args),
+        None => Exit::Done,
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use clap::CommandFactory;
+
+    #[test]
+    fn the_argument_definitions_are_sound() {
+        Cli::command().debug_assert();
+    }
+
+    #[test]
+    fn negative_numbers_are_values_in_both_forms() {
+        for duv in [vec!["--duv", "-0.002"], vec!["--duv=-0.002"]] {
+            let mut line = vec!["whitesmith", "solve", "--emitters", "a.csv", "--cct", "3000", "--r9", "-20..30"];
+            line.extend(duv);
+            let cli = Cli::try_parse_from(line).unwrap();
+            let Some(Command::Solve(args)) = cli.command else { panic!("solve") };
+            assert_eq!(args.target.duv, -0.002);
+            assert_eq!(args.solving.limits.r9, Some(project::Limit::between(-20.0, 30.0)));
+        }
     }
 }

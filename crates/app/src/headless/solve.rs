@@ -1,0 +1,51 @@
+//! `solve`: the best blend at one white, with what it is worth.
+
+use super::answer::AnswerRecord;
+use super::args::{SolvingArgs, TargetArgs};
+use super::asking::{Stopped, load_for};
+use super::{Exit, output};
+use clap::Args;
+use std::time::Instant;
+
+/// Find the best blend of a file's emitters at a white, within limits, with its bound
+#[derive(Debug, Args)]
+pub struct SolveArgs {
+    /// The target.
+    #[command(flatten)]
+    pub target: TargetArgs,
+    /// Everything else.
+    #[command(flatten)]
+    pub solving: SolvingArgs,
+}
+
+/// Runs the command.
+pub fn run(args: &SolveArgs) -> Exit {
+    match solve(args) {
+        Ok(exit) => exit,
+        Err(stopped) => {
+            if args.solving.output.json {
+                output::json(&AnswerRecord::unanswered(stopped.message));
+            }
+            stopped.exit
+        }
+    }
+}
+
+fn solve(args: &SolveArgs) -> Result<Exit, Stopped> {
+    let loaded = load_for(&args.solving)?;
+    let white = args.solving.limits.spec(args.target.cct, args.target.duv);
+    let problem = loaded.problem(&white, args.solving.budget)?;
+    let asked = loaded.asked(&white);
+    let start = Instant::now();
+    let outcome = optimiser::solve(&problem).map_err(|error| Stopped::at("arguments", error))?;
+    let record = asked.record(&outcome, start.elapsed().as_secs_f64());
+    if args.solving.output.json {
+        output::json(&record);
+    } else {
+        record.print(&asked);
+    }
+    if let Some(message) = &record.message {
+        output::sentence(message);
+    }
+    Ok(record.exit())
+}
