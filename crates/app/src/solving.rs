@@ -6,7 +6,7 @@
 //! * [`measure_blend`]: the numbers of a blend against the reference the white spec calls for.
 
 use colour::measure::{measure, measure_at};
-use colour::tolerance;
+use colour::tolerance::{Ellipse, IEC_60081, NOMINAL_CCTS_K, Quadrangle, STEP_RADIUS};
 use colour::{Measurement, Reference, Spectrum, Tensor, TensorSet, UvPrime};
 use optimiser::{Objective, Problem, Range, Target};
 use project::{Limit, Maximise, Metric, Project, Region, SetId, WhiteSpec};
@@ -184,23 +184,23 @@ pub fn region(white: &WhiteSpec) -> Result<optimiser::Region, SolvingError> {
         Region::Point => optimiser::Region::Point,
         Region::Box { cct_k, duv } => optimiser::Region::Box { cct_k: *cct_k, duv: *duv },
         Region::Quadrangle { nominal_k } => {
-            let quadrangle = tolerance::quadrangle(*nominal_k).ok_or_else(|| SolvingError::Quadrangle {
-                known: tolerance::nominal_ccts_k().map(|k| k.to_string()).join(", "),
+            let quadrangle = Quadrangle::nominal(f64::from(*nominal_k)).ok_or_else(|| SolvingError::Quadrangle {
+                known: NOMINAL_CCTS_K.map(|k| k.to_string()).join(", "),
                 found: *nominal_k,
             })?;
-            optimiser::Region::Polygon(quadrangle.corners().iter().map(|xy| xy.uv_prime()).collect())
+            optimiser::Region::Polygon(quadrangle.corners.iter().map(|xy| xy.uv_prime()).collect())
         }
         Region::Sdcm { steps, centre } => {
-            let ellipse = tolerance::ellipse(centre).ok_or_else(|| SolvingError::Centre {
-                known: tolerance::centre_names().join(", "),
+            let ellipse = Ellipse::iec_60081(centre).ok_or_else(|| SolvingError::Centre {
+                known: IEC_60081.each_ref().map(|e| e.name).join(", "),
                 found: centre.clone(),
             })?;
-            let outline = ellipse.outline(*steps, optimiser::ROUND_SIDES);
+            let outline = ellipse.boundary(*steps, optimiser::ROUND_SIDES);
             optimiser::Region::Polygon(outline.iter().map(|xy| xy.uv_prime()).collect())
         }
         Region::Circle { steps } => {
             let centre = colour::locus::uv_at(white.cct_k, white.duv).uv_prime();
-            optimiser::circle(centre, tolerance::CIRCLE_STEP * steps)
+            optimiser::circle(centre, STEP_RADIUS * steps)
         }
         Region::Polygon(corners) => {
             let corners: Vec<UvPrime> = corners.iter().map(|&[u, v]| UvPrime { u, v }).collect();

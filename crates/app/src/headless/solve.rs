@@ -5,6 +5,7 @@ use super::args::{SolvingArgs, TargetArgs};
 use super::asking::{Stopped, load_for};
 use super::{Exit, output};
 use clap::Args;
+use optimiser::Control;
 use std::time::Instant;
 
 /// Find the best blend of a file's emitters at a white, within limits, with its bound
@@ -37,7 +38,7 @@ fn solve(args: &SolveArgs) -> Result<Exit, Stopped> {
     let problem = loaded.problem(&white, args.solving.budget)?;
     let asked = loaded.asked(&white);
     let start = Instant::now();
-    let outcome = optimiser::solve(&problem).map_err(|error| Stopped::at("arguments", error))?;
+    let outcome = optimiser::solve(&problem, &Control::none()).map_err(|error| Stopped::at("arguments", error))?;
     let record = asked.record(&outcome, start.elapsed().as_secs_f64());
     if args.solving.output.json {
         output::json(&record);

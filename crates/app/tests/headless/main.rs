@@ -1,0 +1,7 @@
+//! The headless commands as a person runs them: the built program, its two streams and its exit code.
+
+mod arguments;
+mod measure;
+mod read;
+mod solve;
+mod support;
