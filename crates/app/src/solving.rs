@@ -52,7 +52,9 @@ pub enum SolvingError {
         found: String,
     },
     /// A polygon turns both ways or crosses itself.
-    #[error("expected the corners of a convex polygon in u′v′ in order, found one that turns back or crosses itself")]
+    #[error(
+        "expected the corners of a convex polygon in u′v′ in order, found one that turns back or crosses itself"
+    )]
     Concave,
     /// Too few wall-plug efficiencies.
     #[error("expected {expected} fractions, one an emitter, found {found}")]
@@ -184,10 +186,11 @@ pub fn region(white: &WhiteSpec) -> Result<optimiser::Region, SolvingError> {
         Region::Point => optimiser::Region::Point,
         Region::Box { cct_k, duv } => optimiser::Region::Box { cct_k: *cct_k, duv: *duv },
         Region::Quadrangle { nominal_k } => {
-            let quadrangle = Quadrangle::nominal(f64::from(*nominal_k)).ok_or_else(|| SolvingError::Quadrangle {
-                known: NOMINAL_CCTS_K.map(|k| k.to_string()).join(", "),
-                found: *nominal_k,
-            })?;
+            let quadrangle =
+                Quadrangle::nominal(f64::from(*nominal_k)).ok_or_else(|| SolvingError::Quadrangle {
+                    known: NOMINAL_CCTS_K.map(|k| k.to_string()).join(", "),
+                    found: *nominal_k,
+                })?;
             optimiser::Region::Polygon(quadrangle.corners.iter().map(|xy| xy.uv_prime()).collect())
         }
         Region::Sdcm { steps, centre } => {
@@ -344,7 +347,12 @@ mod tests {
     #[test]
     fn a_circle_is_centred_on_the_target_with_steps_of_0_0011() {
         // Radius 0.0011 n in u′v′: CIE TN 001:2014.
-        let white = WhiteSpec { cct_k: 4000.0, duv: 0.001, region: "circle:2".parse().unwrap(), ..Default::default() };
+        let white = WhiteSpec {
+            cct_k: 4000.0,
+            duv: 0.001,
+            region: "circle:2".parse().unwrap(),
+            ..Default::default()
+        };
         let centre = colour::locus::uv_at(4000.0, 0.001).uv_prime();
         let optimiser::Region::Polygon(corners) = region(&white).unwrap() else { panic!("a polygon") };
         for corner in corners {

@@ -167,7 +167,11 @@ impl Asked<'_> {
                     .collect(),
             }),
             reachable: Some(
-                infeasible.reachable.iter().map(|r| (r.metric.key().to_owned(), Value::from(r.best))).collect(),
+                infeasible
+                    .reachable
+                    .iter()
+                    .map(|r| (r.metric.key().to_owned(), Value::from(r.best)))
+                    .collect(),
             ),
             relaxations: Some(
                 infeasible

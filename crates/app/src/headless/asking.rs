@@ -3,7 +3,7 @@
 use super::answer::Asked;
 use super::args::{BudgetArgs, EmitterArgs, SolvingArgs};
 use super::{AnswerArgs, BadInput, Exit, files, output};
-use crate::solving::{self, Sources, SolvingError};
+use crate::solving::{self, SolvingError, Sources};
 use ::files::read::Outcome;
 use optimiser::{Budget, Problem};
 use project::WhiteSpec;

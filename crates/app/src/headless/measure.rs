@@ -33,7 +33,7 @@ struct SpectrumRecord {
 }
 
 /// Runs the command. A file that is refused or leaves a question open adds nothing: no number rests on a guess.
-pub fn run(args: &MeasureArgs) -> Exit {
+pub(super) fn run(args: &MeasureArgs) -> Exit {
     let mut exit = Exit::Done;
     let mut records = Vec::new();
     for path in &args.files {

@@ -17,8 +17,8 @@ mod solve;
 mod usage;
 
 pub use args::{
-    AnswerArgs, AxisAnswer, BudgetArgs, DecimalAnswer, EmitterArgs, LimitArgs, MaximiseChoice, OrdinateAnswer,
-    OutputArgs, PerAnswer, SolvingArgs, TargetArgs,
+    AnswerArgs, AxisAnswer, BudgetArgs, DecimalAnswer, EmitterArgs, LimitArgs, MaximiseChoice,
+    OrdinateAnswer, OutputArgs, PerAnswer, SolvingArgs, TargetArgs,
 };
 pub use exit::{BadInput, Exit};
 pub use measure::MeasureArgs;
@@ -87,7 +87,8 @@ mod tests {
     #[test]
     fn negative_numbers_are_values_in_both_forms() {
         for duv in [vec!["--duv", "-0.002"], vec!["--duv=-0.002"]] {
-            let mut line = vec!["whitesmith", "solve", "--emitters", "a.csv", "--cct", "3000", "--r9", "-20..30"];
+            let mut line =
+                vec!["whitesmith", "solve", "--emitters", "a.csv", "--cct", "3000", "--r9", "-20..30"];
             line.extend(duv);
             let cli = Cli::try_parse_from(line).unwrap();
             let Some(Command::Solve(args)) = cli.command else { panic!("solve") };

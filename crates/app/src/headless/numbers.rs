@@ -8,10 +8,7 @@ pub(super) fn number(text: &str) -> Result<f64, String> {
 
 /// A number above zero.
 pub(super) fn positive(text: &str) -> Result<f64, String> {
-    number(text)
-        .ok()
-        .filter(|v| *v > 0.0)
-        .ok_or_else(|| format!("expected a number above 0, found `{text}`"))
+    number(text).ok().filter(|v| *v > 0.0).ok_or_else(|| format!("expected a number above 0, found `{text}`"))
 }
 
 /// A correlated colour temperature a blend may be asked for.

@@ -75,7 +75,7 @@ impl From<&Reading> for FileRecord {
 }
 
 /// Runs the command.
-pub fn run(args: &ReadArgs) -> Exit {
+pub(super) fn run(args: &ReadArgs) -> Exit {
     let mut exit = Exit::Done;
     let mut records = Vec::with_capacity(args.files.len());
     for path in &args.files {
@@ -96,7 +96,8 @@ pub fn run(args: &ReadArgs) -> Exit {
 fn print(record: &FileRecord) {
     output::text(&format!("{}: {}", record.file, record.outcome));
     if !record.spectra.is_empty() {
-        let mut table = Table::new(&["  spectrum", "peak nm", "FWHM nm", "from nm", "to nm", "points", "quantity"]);
+        let mut table =
+            Table::new(&["  spectrum", "peak nm", "FWHM nm", "from nm", "to nm", "points", "quantity"]);
         for s in &record.spectra {
             table.row([
                 format!("  {}", s.name),

@@ -20,7 +20,7 @@ pub struct SolveArgs {
 }
 
 /// Runs the command.
-pub fn run(args: &SolveArgs) -> Exit {
+pub(super) fn run(args: &SolveArgs) -> Exit {
     match solve(args) {
         Ok(exit) => exit,
         Err(stopped) => {
@@ -38,15 +38,14 @@ fn solve(args: &SolveArgs) -> Result<Exit, Stopped> {
     let problem = loaded.problem(&white, args.solving.budget)?;
     let asked = loaded.asked(&white);
     let start = Instant::now();
-    let outcome = optimiser::solve(&problem, &Control::none()).map_err(|error| Stopped::at("arguments", error))?;
+    let outcome =
+        optimiser::solve(&problem, &Control::none()).map_err(|error| Stopped::at("arguments", error))?;
     let record = asked.record(&outcome, start.elapsed().as_secs_f64());
     if args.solving.output.json {
         output::json(&record);
+        record.message.iter().for_each(output::sentence);
     } else {
         record.print(&asked);
-    }
-    if let Some(message) = &record.message {
-        output::sentence(message);
     }
     Ok(record.exit())
 }

@@ -41,7 +41,9 @@ fn sentence(error: &clap::Error) -> String {
             format!("{option}: expected {valid}, found {found}")
         }
         ErrorKind::MissingRequiredArgument => format!("arguments: expected {argument} as well, found none"),
-        ErrorKind::UnknownArgument => format!("arguments: expected an option of this command, found `{argument}`"),
+        ErrorKind::UnknownArgument => {
+            format!("arguments: expected an option of this command, found `{argument}`")
+        }
         ErrorKind::ArgumentConflict => format!("arguments: expected {option} at most once, found it twice"),
         _ => {
             let text = error.render().to_string();

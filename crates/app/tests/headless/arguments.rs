@@ -27,12 +27,18 @@ fn malformed_values_are_named_with_what_was_expected() {
     refused(&solve(&["--cct", "3000", "--ra", "95..90"]), &["--ra", "lower end", "`95..90`"]);
     refused(&solve(&["--cct", "3000", "--within", "oval:3"]), &["--within", "box:", "`oval:3`"]);
     refused(&solve(&["--cct", "3000", "--wall-plug", "0.3,1.4"]), &["--wall-plug", "at most 1", "`1.4`"]);
-    refused(&solve(&["--cct", "3000", "--maximise", "beauty"]), &["--maximise", "ler, efficacy, ra, rf", "`beauty`"]);
+    refused(
+        &solve(&["--cct", "3000", "--maximise", "beauty"]),
+        &["--maximise", "ler, efficacy, ra, rf", "`beauty`"],
+    );
     refused(&solve(&["--cct", "3000", "--budget", "0"]), &["--budget", "above 0"]);
     refused(&solve(&["--cct", "3000", "--brightness"]), &["--brightness"]);
     refused(&solve(&[]), &["--cct"]);
     refused(&["measure"], &["FILE"]);
-    refused(&["read", "--axis", "furlong", "none.csv"], &["--axis", "nm, um, angstrom, m, cm-1, ev", "`furlong`"]);
+    refused(
+        &["read", "--axis", "furlong", "none.csv"],
+        &["--axis", "nm, um, angstrom, m, cm-1, ev", "`furlong`"],
+    );
     refused(&["read", "--start", "380", "none.csv"], &["--step"]);
 }
 
@@ -60,7 +66,11 @@ fn an_emitter_without_light_is_named() {
         .lines()
         .enumerate()
         .map(|(k, line)| {
-            let cell = if k == 0 { "upside down".to_owned() } else { (if k == 200 { "1" } else { "-1" }).to_owned() };
+            let cell = if k == 0 {
+                "upside down".to_owned()
+            } else {
+                (if k == 200 { "1" } else { "-1" }).to_owned()
+            };
             format!("{line},{cell}\n")
         })
         .collect();
@@ -68,7 +78,9 @@ fn an_emitter_without_light_is_named() {
     let run = whitesmith(&["solve", "--emitters", &path, "--columns", "2,3,4,5", "--cct", "3000", "--json"]);
     assert_eq!(run.code, 2, "{}", run.err);
     assert!(run.err.contains("upside down") && run.err.contains("positive power"), "{}", run.err);
-    assert!(run.json()["status"].is_null() && run.json()["message"].as_str().unwrap().contains("upside down"));
+    assert!(
+        run.json()["status"].is_null() && run.json()["message"].as_str().unwrap().contains("upside down")
+    );
 }
 
 #[test]

@@ -34,7 +34,10 @@ fn a_plain_file_is_read_without_a_word() {
     assert_eq!(record["spectra"][0]["first_nm"], 380.0);
     assert_eq!(record["spectra"][0]["last_nm"], 780.0);
     assert_eq!(record["spectra"][0]["points"], 401);
-    assert!(!record["assumptions"].as_array().unwrap().is_empty(), "an unstated ordinate is an assumption: {value}");
+    assert!(
+        !record["assumptions"].as_array().unwrap().is_empty(),
+        "an unstated ordinate is an assumption: {value}"
+    );
     assert!(record["message"].is_null());
 }
 
@@ -49,7 +52,10 @@ fn the_first_of_several_faults_decides_nothing_the_worst_does() {
     assert!(value[1]["spectra"].as_array().unwrap().is_empty());
     assert_eq!(value[2]["outcome"], "read");
     assert_eq!(err.lines().count(), 1, "{err}");
-    assert!(err.contains("picture.png") && value[1]["message"].as_str().is_some_and(|m| m.contains("picture.png")));
+    assert!(
+        err.contains("picture.png")
+            && value[1]["message"].as_str().is_some_and(|m| m.contains("picture.png"))
+    );
 }
 
 #[test]

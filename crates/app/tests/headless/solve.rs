@@ -59,7 +59,10 @@ fn check_optimal(id: &str, answer: &Value, problem: &Value, best: f64) {
     assert_eq!(answer["status"], "optimal", "{id}: {answer}");
     let shares: Vec<f64> = answer["shares"].as_array().unwrap().iter().map(|s| s.as_f64().unwrap()).collect();
     assert_eq!(shares.len(), problem["emitters"].as_array().unwrap().len(), "{id}");
-    assert!((shares.iter().sum::<f64>() - 1.0).abs() < 1e-9 && shares.iter().all(|s| *s >= 0.0), "{id}: {shares:?}");
+    assert!(
+        (shares.iter().sum::<f64>() - 1.0).abs() < 1e-9 && shares.iter().all(|s| *s >= 0.0),
+        "{id}: {shares:?}"
+    );
     for limit in answer["limits"].as_array().unwrap() {
         assert_eq!(keys(limit), words("name value low high met"));
         assert_eq!(limit["met"], true, "{id}: {limit}");
@@ -110,7 +113,8 @@ fn every_problem_at_one_white_is_answered_as_well_as_is_known() {
 #[track_caller]
 fn check_white(id: &str, answer: &Value, problem: &Value) {
     let (measured, target) = (&answer["measured"], &problem["target"]);
-    let off = |key: &str, name: &str| (measured[key].as_f64().unwrap() - target[name].as_f64().unwrap()).abs();
+    let off =
+        |key: &str, name: &str| (measured[key].as_f64().unwrap() - target[name].as_f64().unwrap()).abs();
     let width = |name: &str| target[name].as_f64().unwrap();
     assert!(off("cct_k", "CCT") <= width("CCT_tol") + 1e-3, "{id}: {}", measured["cct_k"]);
     assert!(off("duv", "Duv") <= width("Duv_tol") + 1e-8, "{id}: {}", measured["duv"]);
@@ -195,7 +199,18 @@ fn the_scale_of_a_column_does_not_matter() {
 #[test]
 fn the_answer_is_the_same_twice() {
     let csv = data("solve/spectra/P02.csv");
-    let line = ["solve", "--json", "--emitters", csv.to_str().unwrap(), "--cct", "2700", "--ra", "90..", "--r9", "50.."];
+    let line = [
+        "solve",
+        "--json",
+        "--emitters",
+        csv.to_str().unwrap(),
+        "--cct",
+        "2700",
+        "--ra",
+        "90..",
+        "--r9",
+        "50..",
+    ];
     let (mut first, mut second) = (whitesmith(&line).json(), whitesmith(&line).json());
     for answer in [&mut first, &mut second] {
         answer.as_object_mut().unwrap().remove("seconds");

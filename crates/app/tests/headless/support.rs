@@ -22,7 +22,8 @@ impl Run {
 
 /// Runs the program with these arguments.
 pub(crate) fn whitesmith<S: AsRef<std::ffi::OsStr>>(arguments: &[S]) -> Run {
-    let output = Command::new(env!("CARGO_BIN_EXE_whitesmith")).args(arguments).output().expect("the program starts");
+    let output =
+        Command::new(env!("CARGO_BIN_EXE_whitesmith")).args(arguments).output().expect("the program starts");
     Run {
         code: output.status.code().expect("an exit code, not a signal"),
         out: String::from_utf8(output.stdout).expect("UTF-8 on the output stream"),
