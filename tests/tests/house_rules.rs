@@ -47,7 +47,8 @@ fn none(rule: &str, breaches: &[String]) {
 
 #[test]
 fn modules_stay_short_enough_to_read() {
-    const MOST_LINES: usize = 450;
+    // The aim is 100 to 400 lines; this is the ceiling.
+    const MOST_LINES: usize = 1000;
     let breaches: Vec<String> = files(&[".rs"])
         .iter()
         .filter_map(|path| {
@@ -56,7 +57,7 @@ fn modules_stay_short_enough_to_read() {
             (code > MOST_LINES).then(|| format!("{}: {code} lines before its tests", shown(path)))
         })
         .collect();
-    none("a module holds one subject in at most 450 lines, tests aside", &breaches);
+    none("a module holds one subject and stays below the ceiling, tests aside", &breaches);
 }
 
 #[test]
@@ -92,8 +93,17 @@ fn nothing_is_left_half_done_and_no_machine_is_named() {
 
 #[test]
 fn prose_is_british() {
-    let words =
-        ["behavior", "neighbor", "optimize", "normalize", "minimize", "maximize", "analyze", "center ", "gray "];
+    let words = [
+        "behavior",
+        "neighbor",
+        "optimize",
+        "normalize",
+        "minimize",
+        "maximize",
+        "analyze",
+        "center ",
+        "gray ",
+    ];
     let mut breaches = Vec::new();
     for path in files(&[".md"]) {
         for (number, line) in text(&path).lines().enumerate() {
@@ -118,7 +128,8 @@ fn every_table_names_its_source_and_licence() {
         }
         let name = path.file_name().expect("a name").to_string_lossy().into_owned();
         let attribution = text_of("ATTRIBUTION.md");
-        let covered = attribution.contains(&name) || (name.starts_with("illuminants_") && attribution.contains("illuminants_*"));
+        let covered = attribution.contains(&name)
+            || (name.starts_with("illuminants_") && attribution.contains("illuminants_*"));
         if !covered {
             breaches.push(format!("{}: not in ATTRIBUTION.md", shown(path)));
         }
@@ -196,10 +207,22 @@ fn is_allowed(expression: &str, allowed: &BTreeSet<String>) -> bool {
 #[test]
 fn licence_expressions_are_judged_rightly() {
     let allowed: BTreeSet<String> = ["MIT", "Apache-2.0", "Unicode-3.0"].map(str::to_owned).into();
-    for good in ["MIT", "MIT OR GPL-3.0-only", "MIT/Apache-2.0", "(MIT OR GPL-3.0-only) AND Unicode-3.0", "Apache-2.0 AND MIT"] {
+    for good in [
+        "MIT",
+        "MIT OR GPL-3.0-only",
+        "MIT/Apache-2.0",
+        "(MIT OR GPL-3.0-only) AND Unicode-3.0",
+        "Apache-2.0 AND MIT",
+    ] {
         assert!(is_allowed(good, &allowed), "{good}");
     }
-    for bad in ["GPL-3.0-only", "MIT AND GPL-3.0-only", "(GPL-3.0-only OR LGPL-3.0) AND MIT", "", "MIT AND (GPL-2.0)"] {
+    for bad in [
+        "GPL-3.0-only",
+        "MIT AND GPL-3.0-only",
+        "(GPL-3.0-only OR LGPL-3.0) AND MIT",
+        "",
+        "MIT AND (GPL-2.0)",
+    ] {
         assert!(!is_allowed(bad, &allowed), "{bad}");
     }
 }
@@ -207,7 +230,8 @@ fn licence_expressions_are_judged_rightly() {
 #[test]
 fn dependencies_keep_to_the_licence_list() {
     let deny = text_of("deny.toml");
-    let list = deny.split_once("allow = [").and_then(|(_, rest)| rest.split_once(']')).expect("the allow list").0;
+    let list =
+        deny.split_once("allow = [").and_then(|(_, rest)| rest.split_once(']')).expect("the allow list").0;
     let allowed: BTreeSet<String> = list
         .lines()
         .filter_map(|line| line.trim().strip_prefix('"'))
@@ -242,7 +266,8 @@ fn dependencies_between_the_crates_point_one_way() {
     let packages = metadata["packages"].as_array().expect("packages");
     let mut breaches = Vec::new();
     for (name, may_use) in allowed {
-        let package = packages.iter().find(|p| p["name"] == name).unwrap_or_else(|| panic!("the crate {name}"));
+        let package =
+            packages.iter().find(|p| p["name"] == name).unwrap_or_else(|| panic!("the crate {name}"));
         for dependency in package["dependencies"].as_array().expect("dependencies") {
             // Checks may look further than the code they check.
             if dependency["kind"] == "dev" {
@@ -257,5 +282,8 @@ fn dependencies_between_the_crates_point_one_way() {
             }
         }
     }
-    none("colour ← optimiser; colour ← device ← project ← files; the window only in the application", &breaches);
+    none(
+        "colour ← optimiser; colour ← device ← project ← files; the window only in the application",
+        &breaches,
+    );
 }
