@@ -3,6 +3,7 @@
 //! * [`Cache::of`]: the [`Derived`] of a state; only what changed is computed again.
 //! * [`light`]: one emitter's spectrum as numbers ([`Light`]).
 //! * [`blend`]: a set's blend ([`BlendView`]) with its rows.
+//! * [`reach`]: which whites a set can make at all.
 //! * [`region`]: where the white may lie ([`WhiteRegion`]).
 //! * [`ledger`]: every requirement as data ([`LedgerLine`]).
 //!
@@ -12,6 +13,7 @@
 pub mod blend;
 pub mod ledger;
 pub mod light;
+pub mod reach;
 pub mod region;
 
 mod sensitivity;

@@ -1,0 +1,3 @@
+//! What opens over the benches.
+
+pub(super) mod emitter;

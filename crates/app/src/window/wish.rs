@@ -1,0 +1,21 @@
+//! What drawing a frame asks for; the application grants it after the frame is drawn.
+
+use super::command::Command;
+use crate::state::Edit;
+
+/// One thing asked for.
+#[derive(Debug)]
+pub(super) enum Wish {
+    /// Change the project.
+    Edit(Edit),
+    /// Open an undo step that lasts until `End`.
+    Begin(String),
+    /// Close it.
+    End,
+    /// Take it back.
+    Cancel,
+    /// Do what a menu, button or key stands for.
+    Command(Command),
+    /// Tell the user something.
+    Say(String),
+}
