@@ -4,6 +4,7 @@
 use colour::illuminant::cie_source;
 use colour::locus::{cct_duv, duv_by_polynomial, planckian_uv, uv_at};
 use colour::measure::{Measurement, measure};
+use colour::photobiology::blue_light_radiance_w_per_m2_sr;
 use colour::shapes::Shape;
 use colour::{Observer, Tensor, TensorSet, UvPrime};
 
@@ -100,6 +101,8 @@ fn three_gaussians_at_4000_k() {
     check("Rcs,h1", got.rcs_bins.expect("bins")[0].expect("bin 1"), -6.1, 0.05);
     check("melanopic DER", got.melanopic_der, 0.634, 5e-4);
     check("K_B,v", got.kbv_w_per_lm, 4.89e-4, 5e-7);
+    let at_3000_cd_per_m2 = blue_light_radiance_w_per_m2_sr(&Tensor::of_grid(&grid), 3000.0);
+    check("L_B", at_3000_cd_per_m2, 1.5, 0.05);
 }
 
 /// The switch of CIE 13.3 at 5000 K: 92.18 / 61.4 with the Planckian, 91.90 / 60.3 with daylight.
