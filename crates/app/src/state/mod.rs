@@ -3,10 +3,12 @@
 //! * [`State`]: the project with its history; [`State::apply`] is the only place the project changes.
 //! * [`Edit`]: every change, serialisable, with its inverse.
 //! * [`mixing`]: pure functions on shares: rebalancing, white-held pulls, conversions between kinds.
+//! * [`demo`]: the demo projects the program carries.
 //! * [`derived`]: everything the window shows, computed from the project and remembered by content.
 //!
 //! Out of scope: drawing, files (crate `files`), solving (crate `optimiser`).
 
+pub mod demo;
 pub mod derived;
 mod edit;
 mod history;
