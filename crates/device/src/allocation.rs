@@ -7,7 +7,7 @@
 
 use std::sync::Arc;
 
-use crate::roll_off::scan_minimum;
+use crate::roll_off::{scan_minimum, scan_minimum_to};
 use crate::working::Characteristic;
 
 /// Currents looked at before refining.
@@ -109,7 +109,8 @@ impl Item {
             let point = self.point(log.exp());
             point.cost + price * point.area
         };
-        let refined = self.point(scan_minimum(value, low, high, 2).exp().clamp(low.exp(), high.exp()));
+        // 28 steps leave 1e-6 of two grid steps: the value is then exact to rounding.
+        let refined = self.point(scan_minimum_to(value, low, high, 2, 28).exp().clamp(low.exp(), high.exp()));
         let grid = self.grid[index];
         if refined.cost + price * refined.area <= grid.cost + price * grid.area { refined } else { grid }
     }
@@ -205,6 +206,9 @@ pub(crate) fn least_power(items: &[&Item], demand: &[f64], budget: f64) -> Resul
         let points = at_price(middle);
         if fits(&points) {
             (high, dear) = (middle, points);
+            if area(&dear) >= budget * (1.0 - 1e-10) {
+                break;
+            }
         } else {
             (low, cheap) = (middle, points);
         }

@@ -14,6 +14,7 @@
 //! | [`calibration`] | the user's runs behind a shared zone |
 //! | [`whole_numbers`] | closest white of whole units |
 //! | [`power`] | device electrical power as an objective, with bounds |
+//! | [`efficacy`] | best lm/W over blends and freedoms, around a solver the caller brings |
 //! | [`made`], [`recipe`], [`bands`] | fabrication numbers, what a recipe says, allowed bands |
 //! | [`form`], [`channels`] | what the forms have in common |
 //! | [`units`] | physical constants |
@@ -29,6 +30,7 @@ pub mod calibration;
 pub mod channels;
 pub mod conversion;
 pub mod curve;
+pub mod efficacy;
 pub mod error;
 pub mod form;
 pub mod light;

@@ -363,8 +363,14 @@ impl PowerModel {
         rows
     }
 
-    fn price_cell(&self, budget: f64, prices: usize) -> Cell {
-        // Prices that matter lie around the power density at which the channels run.
+    /// Whether the form is bounded by prices on area (own currents) and not by intervals.
+    pub fn is_priced(&self) -> bool {
+        matches!(self.coupling, Coupling::Own { .. })
+    }
+
+    /// Prices on area that can matter, W per unit of area: from far below to far above the power density at
+    /// which the channels run.
+    pub fn price_range(&self) -> (f64, f64) {
         let (mut least, mut most) = (f64::INFINITY, 0.0f64);
         for item in &self.items {
             let (low, high) = item.characteristic().range();
@@ -374,18 +380,34 @@ impl PowerModel {
                 most = most.max(point.cost / point.area);
             }
         }
-        let (least, most) = (least * 1e-2, most * 10.0);
-        let planes = std::iter::once(0.0)
-            .chain((0..prices).map(|k| least * (most / least).powf((k as f64 + 0.5) / prices as f64)))
-            .map(|price| {
-                let per_demand: Vec<f64> = self.items.iter().map(|item| item.bound(price, 1e-5)).collect();
-                Plane { constant_w: -price * budget, per_radiant_w: self.per_watt(&per_demand) }
-            })
-            .collect();
+        if least.is_finite() { (least * 1e-2, most * 10.0) } else { (1e-3, 1e3) }
+    }
+
+    /// The cell with the one plane of a price on area; for other forms, the plane of an empty budget.
+    ///
+    /// For every blend, least power ≥ `Σ D·min_J[cost + price·area] − price·budget`.
+    pub fn priced(&self, price: f64) -> Cell {
+        let budget = match self.coupling {
+            Coupling::Own { budget } => budget,
+            _ => 0.0,
+        };
         let tightest: Vec<f64> =
             self.items.iter().map(|item| 1.0 / most_photons(item.characteristic())).collect();
         let rows = vec![Row { per_radiant_w: self.per_watt(&tightest), at_most: budget }];
-        Cell { low: 0.0, high: 0.0, planes, rows }
+        Cell { low: 0.0, high: 0.0, planes: vec![self.price_plane(price, budget)], rows }
+    }
+
+    fn price_plane(&self, price: f64, budget: f64) -> Plane {
+        let per_demand: Vec<f64> = self.items.iter().map(|item| item.bound(price, 1e-5)).collect();
+        Plane { constant_w: -price * budget, per_radiant_w: self.per_watt(&per_demand) }
+    }
+
+    fn price_cell(&self, budget: f64, prices: usize) -> Cell {
+        let (least, most) = self.price_range();
+        let spread = (0..prices).map(|k| least * (most / least).powf((k as f64 + 0.5) / prices as f64));
+        let planes =
+            std::iter::once(0.0).chain(spread).map(|price| self.price_plane(price, budget)).collect();
+        Cell { planes, ..self.priced(0.0) }
     }
 
     /// The relaxation over one interval of the common current or voltage.

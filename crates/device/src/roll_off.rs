@@ -160,7 +160,18 @@ fn scaled_residual(rows: &[(f64, f64)], shape: impl Fn(f64) -> f64) -> (f64, f64
 }
 
 /// Place of the smallest value: a scan, then golden section between the neighbours of the best sample.
-pub(crate) fn scan_minimum(mut f: impl FnMut(f64) -> f64, low: f64, high: f64, samples: usize) -> f64 {
+pub(crate) fn scan_minimum(f: impl FnMut(f64) -> f64, low: f64, high: f64, samples: usize) -> f64 {
+    scan_minimum_to(f, low, high, samples, 60)
+}
+
+/// As [`scan_minimum`], with the number of golden-section steps (each narrows by 0.618).
+pub(crate) fn scan_minimum_to(
+    mut f: impl FnMut(f64) -> f64,
+    low: f64,
+    high: f64,
+    samples: usize,
+    golden_steps: usize,
+) -> f64 {
     let step = (high - low) / samples as f64;
     let mut best = (low, f64::INFINITY);
     for k in 0..=samples {
@@ -174,7 +185,7 @@ pub(crate) fn scan_minimum(mut f: impl FnMut(f64) -> f64, low: f64, high: f64, s
     let (mut a, mut b) = ((best.0 - step).max(low), (best.0 + step).min(high));
     let (mut c, mut d) = (b - golden * (b - a), a + golden * (b - a));
     let (mut fc, mut fd) = (f(c), f(d));
-    for _ in 0..60 {
+    for _ in 0..golden_steps {
         if fc <= fd {
             (b, d, fd) = (d, c, fc);
             c = b - golden * (b - a);

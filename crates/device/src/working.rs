@@ -456,15 +456,9 @@ impl Characteristic {
             let last = self.ladder.last()?;
             return ((last.1 - wanted).abs() <= tolerance).then_some(last.0);
         };
-        let (mut low, mut high) = (step[0].0.ln(), step[1].0.ln());
-        for _ in 0..80 {
-            let middle = 0.5 * (low + high);
-            if middle <= low || middle >= high {
-                break;
-            }
-            if self.photon_current(middle.exp()) < wanted { low = middle } else { high = middle }
-        }
-        Some(high.exp().clamp(step[0].0, step[1].0))
+        let excess = |log: f64| self.photon_current(log.exp()) - wanted;
+        let log = root_between(excess, step[0].0.ln(), step[1].0.ln());
+        Some(log.exp().clamp(step[0].0, step[1].0))
     }
 
     /// Smallest current of the range with a wanted voltage; the range's ends where it lies outside.
@@ -476,15 +470,8 @@ impl Characteristic {
         if self.voltage(high) <= voltage_v {
             return high;
         }
-        let (mut a, mut b) = (low.ln(), high.ln());
-        for _ in 0..80 {
-            let middle = 0.5 * (a + b);
-            if middle <= a || middle >= b {
-                break;
-            }
-            if self.voltage(middle.exp()) < voltage_v { a = middle } else { b = middle }
-        }
-        (0.5 * (a + b)).exp()
+        let log = root_between(|log| self.voltage(log.exp()) - voltage_v, low.ln(), high.ln());
+        log.exp().clamp(low, high)
     }
 
     /// Everything the sheet gives at one current density.
@@ -551,6 +538,44 @@ impl Characteristic {
             notices,
         })
     }
+}
+
+/// Root of a function that is negative at `low` and positive at `high`: false position with halving of the
+/// stale end (Illinois rule), kept inside a shrinking bracket; the side where the function is not negative.
+pub(crate) fn root_between(f: impl Fn(f64) -> f64, low: f64, high: f64) -> f64 {
+    let (mut a, mut b) = (low, high);
+    let (mut fa, mut fb) = (f(a), f(b));
+    if fa >= 0.0 {
+        return a;
+    }
+    let mut side = 0i8;
+    for step in 0..120 {
+        // Every third step halves the bracket, so that a bad shape cannot stall the search.
+        let slope = (a * fb - b * fa) / (fb - fa);
+        let middle =
+            if step % 3 == 2 || slope <= a || slope >= b || slope.is_nan() { 0.5 * (a + b) } else { slope };
+        if middle <= a || middle >= b {
+            break;
+        }
+        let value = f(middle);
+        if value == 0.0 {
+            return middle;
+        }
+        if value < 0.0 {
+            (a, fa) = (middle, value);
+            if side == -1 {
+                fb *= 0.5;
+            }
+            side = -1;
+        } else {
+            (b, fb) = (middle, value);
+            if side == 1 {
+                fa *= 0.5;
+            }
+            side = 1;
+        }
+    }
+    b
 }
 
 /// Radiant watts of a package at its test current: stated, or from the middle of its flux bin.

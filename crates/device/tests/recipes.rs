@@ -3,7 +3,10 @@
 
 mod support;
 
+use support::zone;
+
 use device::bands::FURTHEST_FACTOR;
+use device::conversion::{Conversion, Converter};
 use device::curve::Table;
 use device::light::{delta_uv_prime, u_prime_v_prime};
 use device::packages::{Packages, StringRule};
@@ -545,4 +548,85 @@ fn unusable_input_is_an_error_and_never_a_panic() {
     bad[0].sheet.eqe = Some(EqeModel::Table(Table::new(vec![(1.0, 20.0), (10.0, 15.0)])));
     let error = build.recipe(&bad, &[0.2, 0.3, 0.5], level).unwrap_err();
     assert!(error.to_string().contains("per cent"), "{error}");
+}
+
+#[test]
+fn a_dark_emitter_takes_no_area_no_current_and_no_unit() {
+    let mut dice = Dice::new(600);
+    let emitters = random_set(&mut dice, 3);
+    let shares = [0.4, 0.0, 0.6];
+    for build in [
+        side_by_side(SideBySide::default()),
+        side_by_side(SideBySide { drive: Drive::CommonCurrent(None), ..SideBySide::default() }),
+        stack(SeriesStack::default()),
+    ] {
+        let recipe = build.recipe(&emitters, &shares, Level::LuminousExitance(800.0)).unwrap();
+        check(recipe.delta_uv_prime.unwrap(), 0.0, 1e-9);
+        let dark = &recipe.emitters[1];
+        assert_eq!((dark.share_radiant, dark.eqe, dark.voltage_v), (0.0, None, None));
+        assert_eq!(dark.area_share, Some(0.0));
+        if let Some(Details::SeriesStack { units, .. }) = &recipe.details {
+            assert_eq!(units.len(), 2);
+        }
+    }
+}
+
+#[test]
+fn a_zone_without_efficiencies_still_gives_its_layers() {
+    let mut dice = Dice::new(601);
+    let mut emitters = random_set(&mut dice, 3);
+    let (build, shares) = zone(&mut dice, &emitters);
+    for emitter in &mut emitters {
+        emitter.sheet = Sheet::default();
+    }
+    let recipe = build.recipe(&emitters, &shares, Level::Luminance(1000.0)).unwrap();
+    for (found, wanted) in recipe.shares_radiant().iter().zip(&shares) {
+        check(*found, *wanted, 1e-9);
+    }
+    check(recipe.luminance_cd_per_m2.unwrap(), 1000.0, 1e-6);
+    assert_eq!(recipe.efficacy_lm_per_w, None);
+    let Some(Details::SharedZone { layers, calibration_runs, .. }) = &recipe.details else {
+        panic!("a zone has layers")
+    };
+    assert_eq!(calibration_runs.len(), 7);
+    assert!(layers[1].concentration_percent.is_some() && layers[1].next_run.is_some());
+    assert!(recipe.missing.iter().any(|m| m.contains("EQE")));
+}
+
+#[test]
+fn a_white_outside_the_calibration_is_refused_with_the_run_to_make() {
+    let mut dice = Dice::new(602);
+    let emitters = random_set(&mut dice, 3);
+    let (build, _) = zone(&mut dice, &emitters);
+    let error =
+        build.recipe(&emitters, &[0.97, 0.01, 0.02], Level::Luminance(500.0)).unwrap_err().to_string();
+    assert!(error.contains("not extrapolated") && error.contains("next run"), "{error}");
+}
+
+#[test]
+fn bands_of_concentrations_and_depths_hold_at_points_inside() {
+    let mut dice = Dice::new(603);
+    let emitters = random_set(&mut dice, 4);
+    let (zone_build, zone_shares) = zone(&mut dice, &emitters);
+    let layers = [(1, 0.5), (2, 0.4)].map(|(emitter, s)| Converter {
+        emitter,
+        quantum_yield: 0.9,
+        relative_absorption: vec![(1, s)],
+        ..Converter::default()
+    });
+    let conversions = vec![Conversion { pump: 0, layers: layers.to_vec() }];
+    let converted = Build { conversions, ..side_by_side(SideBySide::default()) };
+    for (build, shares) in [(zone_build, zone_shares), (converted, vec![0.2, 0.3, 0.3, 0.2])] {
+        let recipe = build.recipe(&emitters, &shares, Level::LuminousExitance(600.0)).unwrap();
+        let (made, centre) = (recipe.made.unwrap(), (recipe.u_prime.unwrap(), recipe.v_prime.unwrap()));
+        let inside = circle(&emitters, centre, 0.0033);
+        let found = build.bands(&emitters, &made, &inside).unwrap();
+        assert!(found.bands.iter().any(|band| !band.open_high && band.together_high < band.alone_high));
+        for _ in 0..300 {
+            let point = found.bands.iter().fold(made.clone(), |made, band| {
+                made.with(band.quantity, dice.between(band.together_low, band.together_high))
+            });
+            assert!(inside(&build.predict(&emitters, &point).unwrap().shares_radiant()));
+        }
+    }
 }

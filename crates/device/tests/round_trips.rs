@@ -3,14 +3,14 @@
 
 mod support;
 
-use device::calibration::{ZoneRun, ZoneSetting};
+use support::zone;
+
 use device::conversion::{Conversion, Converter};
 use device::packages::Packages;
 use device::series_stack::{SeriesStack, StackUnit};
-use device::shared_zone::{Knob, SharedZone, ZoneHold};
 use device::side_by_side::{Drive, Freedom, SideBySide, StripeCurrents};
 use device::units::watts_per_photon_current;
-use device::{Build, Characteristic, DeviceEmitter, FormSettings, Level, Quantities, Recipe, ShareKind};
+use device::{Build, Characteristic, DeviceEmitter, FormSettings, Level, Quantities, Recipe};
 use proptest::prelude::*;
 use support::{Dice, emitter, random_light, random_package, random_set, random_shares};
 
@@ -106,58 +106,6 @@ fn side_by_side(drive: Drive) -> Build {
 
 fn series() -> Build {
     Build { form: FormSettings::SeriesStack(SeriesStack::default()), ..Build::default() }
-}
-
-/// A zone of `count` emitters whose runs follow an exact hidden law, and shares inside its range.
-fn zone(dice: &mut Dice, emitters: &[DeviceEmitter]) -> (Build, Vec<f64>) {
-    let count = emitters.len();
-    let laws: Vec<(f64, f64, f64)> = (0..count)
-        .map(|_| (dice.between(-0.5, 0.5), dice.between(0.5, 1.2), dice.between(0.02, 0.08)))
-        .collect();
-    let photons = |settings: &[(f64, f64)]| -> Vec<f64> {
-        let ratio = |k: usize| {
-            let ((alpha, beta, delta), (c, t)) = (laws[k], settings[k]);
-            if k == 0 { 1.0 } else { (alpha + beta * f64::ln(c) + delta * t).exp() }
-        };
-        (0..count).map(ratio).collect()
-    };
-    let radiant = |photons: &[f64]| -> Vec<f64> {
-        let watts: Vec<f64> =
-            photons.iter().zip(emitters).map(|(n, e)| n / e.light.mean_wavelength_nm).collect();
-        let sum: f64 = watts.iter().sum();
-        watts.iter().map(|w| w / sum).collect()
-    };
-    let corners = [(0.2, 5.0), (0.2, 15.0), (1.0, 5.0), (1.0, 15.0), (0.5, 9.0), (0.4, 11.0), (0.7, 8.0)];
-    let runs = (0..corners.len())
-        .map(|r| {
-            // Each emitter walks the corners from another start, so that no two move together.
-            let settings: Vec<(f64, f64)> = (0..count).map(|k| corners[(r + k) % corners.len()]).collect();
-            let setting =
-                |&(c, t): &(f64, f64)| ZoneSetting { concentration_percent: Some(c), thickness_nm: Some(t) };
-            ZoneRun {
-                id: format!("invented run {r}"),
-                current_ma_per_cm2: Some(5.0),
-                settings: settings.iter().map(setting).collect(),
-                shares: radiant(&photons(&settings)),
-                kind: ShareKind::Radiant,
-            }
-        })
-        .collect();
-    let wanted: Vec<(f64, f64)> =
-        (0..count).map(|_| (dice.between(0.25, 0.9), dice.between(6.0, 14.0))).collect();
-    // Odd emitters turn their thickness at a held concentration, even ones the other way round.
-    let holds = (1..count)
-        .map(|emitter| {
-            let (c, t) = wanted[emitter];
-            if emitter % 2 == 1 {
-                ZoneHold { emitter, turn: Knob::Thickness, other: Some(c) }
-            } else {
-                ZoneHold { emitter, turn: Knob::Concentration, other: Some(t) }
-            }
-        })
-        .collect();
-    let form = SharedZone { runs, holds, ..SharedZone::default() };
-    (Build { form: FormSettings::SharedZone(form), ..Build::default() }, radiant(&photons(&wanted)))
 }
 
 fn package_set(dice: &mut Dice, count: usize) -> Vec<DeviceEmitter> {
