@@ -129,6 +129,15 @@ pub fn measure_with(light: &Tensor, fixed: Option<&Reference>, arithmetic: Arith
         fwhm_nm: None,
         warnings: Vec::new(),
     };
+    // Ratios do not care for the scale, but products of very small or very large numbers leave the range of a float.
+    let scaled;
+    let power = light.radiant_power();
+    let light = if power.is_finite() && power > 0.0 && !(1e-60..1e60).contains(&power) {
+        scaled = light.scaled(1.0 / power);
+        &scaled
+    } else {
+        light
+    };
     if !light.is_light() {
         out.warnings.push(
             "There is no positive light between 380 and 780 nm, so the colour numbers are set to zero."
@@ -179,6 +188,12 @@ fn why_no_cct(uv: Uv) -> String {
 
 impl Measurement {
     fn fill_cri(&mut self, rendering: &Cri) {
+        // Light with strongly negative parts can be white to the observer and have no rendering at all.
+        if !rendering.r.iter().all(|r| r.is_finite()) {
+            self.warnings
+                .push("Ra and R1–R15 cannot be computed: parts of the spectrum are negative.".to_owned());
+            return;
+        }
         self.ra = Some(rendering.ra);
         self.r = Some(rendering.r);
         if rendering.reference_distance_uv > GREATEST_REFERENCE_DISTANCE_UV {
@@ -190,8 +205,13 @@ impl Measurement {
     }
 
     fn fill_fidelity(&mut self, numbers: &Fidelity) {
+        if !numbers.samples.iter().all(|score| score.is_finite()) {
+            self.warnings
+                .push("Rf and Rg cannot be computed: parts of the spectrum are negative.".to_owned());
+            return;
+        }
         self.rf = Some(numbers.rf);
-        self.rg = numbers.rg;
+        self.rg = numbers.rg.filter(|rg| rg.is_finite());
         self.rf_bins = Some(numbers.rf_bins);
         self.rcs_bins = Some(numbers.rcs_bins);
         self.rhs_bins = Some(numbers.rhs_bins);
@@ -215,6 +235,7 @@ impl Measurement {
 mod tests {
     use super::*;
     use crate::illuminant::cie_source;
+    use proptest::prelude::*;
 
     #[test]
     fn far_from_the_locus_only_the_plain_numbers_remain() {
@@ -234,7 +255,7 @@ mod tests {
 
     #[test]
     fn a_light_far_from_its_reference_is_measured_with_a_warning() {
-        // CIE HP1: low-pressure-like sodium, Duv well beyond 5.4e-3? FL10-like sources are near; shift one by tinting.
+        // FL2 with a third more power from 500 to 570 nm: greenish, yet near enough the locus for a CCT.
         let mut grid = cie_source("FL2").unwrap().on_colour_grid();
         for value in &mut grid[120..190] {
             *value *= 1.3;
@@ -254,6 +275,51 @@ mod tests {
             let dark = measure(&Tensor::of_grid(&grid));
             assert_eq!((dark.x, dark.ler_lm_per_w, dark.cct_k), (0.0, 0.0, None));
             assert_eq!(dark.warnings.len(), 1);
+        }
+    }
+
+    /// Every number of a measurement in one list.
+    fn numbers(m: &Measurement) -> Vec<f64> {
+        let mut all =
+            vec![m.x, m.y, m.u_prime, m.v_prime, m.ler_lm_per_w, m.sp_ratio, m.melanopic_der, m.kbv_w_per_lm];
+        all.extend([m.cct_k, m.duv, m.ra, m.rf, m.rg, m.peak_nm, m.fwhm_nm].into_iter().flatten());
+        all.extend(m.r.into_iter().flatten());
+        for bins in [m.rf_bins, m.rcs_bins, m.rhs_bins].into_iter().flatten() {
+            all.extend(bins.into_iter().flatten());
+        }
+        all
+    }
+
+    proptest! {
+        #[test]
+        fn no_number_is_ever_nan_or_infinite(
+            values in proptest::collection::vec(prop_oneof![4 => 0.0..1.0f64, 1 => -1.0..1.0f64, 1 => Just(0.0)], 401),
+            exponent in -300i32..300,
+            slope in -8.0..8.0f64,
+        ) {
+            let scale = 10f64.powi(exponent);
+            let grid: Vec<f64> = values
+                .iter()
+                .enumerate()
+                .map(|(i, value)| scale * value * (slope * i as f64 / 400.0).exp())
+                .collect();
+            for number in numbers(&measure(&Tensor::of_grid(&grid))) {
+                prop_assert!(number.is_finite());
+            }
+        }
+
+        #[test]
+        fn power_does_not_change_the_numbers(
+            shares in proptest::collection::vec(0.01..1.0f64, 4),
+            factor in 1e-9..1e9f64,
+        ) {
+            let sources = ["FL2", "LED-B3", "A", "D65"];
+            let set = crate::TensorSet::new(&sources.map(|name| Tensor::of(&cie_source(name).unwrap())));
+            let light = set.blend(&shares);
+            let (one, other) = (measure(&light), measure(&light.scaled(factor)));
+            for (a, b) in numbers(&one).into_iter().zip(numbers(&other)) {
+                prop_assert!((a - b).abs() <= 1e-7 * (1.0 + a.abs()), "{} {}", a, b);
+            }
         }
     }
 

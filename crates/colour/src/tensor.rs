@@ -266,6 +266,7 @@ impl Tensor {
         let white = self.xyz(Observer::Cie1931);
         let ten = self.xyz(Observer::Cie1964);
         self.radiant_power() > 0.0
+            && self.values[column::POWER_NM].is_finite()
             && white.y > 0.0
             && white.x + white.y + white.z > 0.0
             && white.x + 15.0 * white.y + 3.0 * white.z > 0.0
