@@ -29,12 +29,15 @@ fn sample_spectrum() -> Vec<f64> {
     grid
 }
 
+/// How the sums' step is chosen.
+type Step = fn(&[f64]) -> Vec<f64>;
+
 #[test]
 fn scores_of_the_worksheet() {
     let published = Table::read("golden/published.csv");
     let mut compared = 0;
     for name in ["sample", "FL1", "FL2"] {
-        let (grid, thin): (_, fn(&[f64]) -> Vec<f64>) = match cie_source(name) {
+        let (grid, thin): (Vec<f64>, Step) = match cie_source(name) {
             Some(source) => (source.on_colour_grid(), every_fifth),
             None => (sample_spectrum(), <[f64]>::to_vec),
         };
