@@ -74,6 +74,11 @@ impl RenderingKernel {
         &self.reference
     }
 
+    /// Puts another reference in place of the present one; the emitters stay.
+    pub fn set_reference(&mut self, reference: Reference) {
+        self.reference = reference;
+    }
+
     /// Emitter `i`'s test-colour samples as lanes Y | Z | L, 16 each (15 samples and a repeat), L = 2.718 Y − 0.92 X + 0.202 Z.
     pub fn tcs_lanes(&self, i: usize) -> &[f64; TCS_COUNT] {
         &self.tcs[i].0

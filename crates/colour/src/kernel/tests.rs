@@ -155,6 +155,16 @@ fn gradients_are_the_slopes_of_the_values() {
 }
 
 #[test]
+fn another_reference_is_as_good_as_another_kernel() {
+    let set = set();
+    let mut kernel = RenderingKernel::new(&set, &Reference::exact(3000.0));
+    kernel.set_reference(Reference::exact(4200.0));
+    let other = RenderingKernel::new(&set, &Reference::exact(4200.0));
+    assert_eq!(kernel.ra_r9(&shares(7)), other.ra_r9(&shares(7)));
+    assert_eq!(kernel.rf_rg(&shares(7)), other.rf_rg(&shares(7)));
+}
+
+#[test]
 fn the_kernel_shows_each_emitters_own_quantities() {
     let set = set();
     let kernel = RenderingKernel::new(&set, &Reference::exact(3000.0));
