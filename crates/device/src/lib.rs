@@ -15,7 +15,7 @@
 //! | [`whole_numbers`] | closest white of whole units |
 //! | [`power`] | device electrical power as an objective, with bounds |
 //! | [`efficacy`] | best lm/W over blends and freedoms, around a solver the caller brings |
-//! | [`made`], [`recipe`], [`bands`] | fabrication numbers, what a recipe says, allowed bands |
+//! | [`made`], [`recipe`], [`bands`], [`bring_back`] | fabrication numbers, what a recipe says, allowed bands, the way back |
 //! | [`form`], [`channels`] | what the forms have in common |
 //! | [`units`] | physical constants |
 //! | [`error`] | errors and notices |
@@ -25,6 +25,7 @@
 
 mod allocation;
 pub mod bands;
+pub mod bring_back;
 pub mod build;
 pub mod calibration;
 pub mod channels;

@@ -630,3 +630,59 @@ fn bands_of_concentrations_and_depths_hold_at_points_inside() {
         }
     }
 }
+
+#[test]
+fn a_changed_number_that_is_locked_is_answered_by_the_others() {
+    let mut dice = Dice::new(700);
+    let emitters = random_set(&mut dice, 3);
+    let shares = random_shares(&mut dice, 3);
+    let level = Level::LuminousExitance(800.0);
+    let (zone_build, zone_shares) = zone(&mut dice, &emitters);
+    let common = Drive::CommonCurrent(None);
+    let cases = [
+        (side_by_side(SideBySide::default()), shares.clone(), QuantityKind::AreaShare),
+        (side_by_side(SideBySide::default()), shares.clone(), QuantityKind::CurrentDensity),
+        (
+            side_by_side(SideBySide { drive: common, ..SideBySide::default() }),
+            shares.clone(),
+            QuantityKind::AreaShare,
+        ),
+        (stack(SeriesStack::default()), shares.clone(), QuantityKind::UnitEqe),
+        (stack(SeriesStack::default()), shares.clone(), QuantityKind::CommonCurrentDensity),
+        (zone_build, zone_shares, QuantityKind::Concentration),
+    ];
+    for (build, shares, kind) in cases {
+        let made = build.recipe(&emitters, &shares, level).unwrap().made.unwrap();
+        let last = |number: &&(device::Quantity, f64)| number.0.kind == kind;
+        let numbers = made.numbers();
+        let (quantity, value) = *numbers.iter().rev().find(last).unwrap();
+        let changed = made.with(quantity, 0.985 * value);
+        let back = build.bring_back(&emitters, &changed, &[quantity], &shares, level).unwrap();
+        assert!(back.recipe.delta_uv_prime.unwrap() < 1e-9);
+        check(back.recipe.luminous_exitance_lm_per_m2.unwrap(), 800.0, 1e-6);
+        assert!(!back.changes.is_empty() && back.changes.iter().all(|change| change.quantity != quantity));
+        // Applying the changes by hand gives the white back.
+        let applied = back.changes.iter().fold(changed, |made, change| made.with(change.quantity, change.to));
+        let predicted = build.predict(&emitters, &applied).unwrap();
+        for (found, wanted) in predicted.shares_radiant().iter().zip(&shares) {
+            check(*found, *wanted, 1e-9);
+        }
+    }
+}
+
+#[test]
+fn a_locked_depth_cannot_be_answered_by_anything_else() {
+    let mut dice = Dice::new(701);
+    let emitters = random_set(&mut dice, 3);
+    let layers = vec![Converter { emitter: 1, quantum_yield: 0.9, ..Converter::default() }];
+    let conversions = vec![Conversion { pump: 0, layers }];
+    let build = Build { conversions, ..side_by_side(SideBySide::default()) };
+    let shares = [0.2, 0.3, 0.5];
+    let level = Level::LuminousExitance(800.0);
+    let made = build.recipe(&emitters, &shares, level).unwrap().made.unwrap();
+    let is_depth = |number: &&(device::Quantity, f64)| number.0.kind == QuantityKind::OpticalDepth;
+    let numbers = made.numbers();
+    let (quantity, depth) = *numbers.iter().find(is_depth).unwrap();
+    let error = build.bring_back(&emitters, &made.with(quantity, 1.1 * depth), &[quantity], &shares, level);
+    assert!(error.unwrap_err().to_string().contains("optical depth"));
+}
