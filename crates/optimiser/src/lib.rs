@@ -2,6 +2,8 @@
 //!
 //! A [`Problem`] holds emitters, a white, limits, bounds and what to maximise; [`solve`] answers with an [`Outcome`]: a blend with a
 //! proven bound, or why there is none and what comes nearest. Same question, same answer, whatever the number of threads.
+//!
+//! [`unmix`] goes the other way: the shares of known emitters in a measured white.
 
 mod answer;
 mod ask;
@@ -26,6 +28,7 @@ mod solve;
 mod space;
 mod table;
 mod tcs;
+pub mod unmix;
 
 pub use answer::{
     Binding, Grade, Infeasible, Nearest, Outcome, PROVEN_GAP, Reachable, Relaxation, Shortfall, Solution,

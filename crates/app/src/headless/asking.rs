@@ -4,9 +4,10 @@ use super::answer::Asked;
 use super::args::{BudgetArgs, EmitterArgs, SolvingArgs};
 use super::{AnswerArgs, BadInput, Exit, files, output};
 use crate::solving::{self, SolvingError, Sources};
-use ::files::read::Outcome;
+use ::files::read::{Outcome, Reading};
 use optimiser::{Budget, Problem};
 use project::WhiteSpec;
+use std::path::Path;
 
 /// Why nothing could be asked: the exit code and the sentence (already printed on the error stream).
 #[derive(Debug)]
@@ -31,9 +32,9 @@ pub(super) struct Loaded {
     pub(super) wall_plug: Vec<f64>,
 }
 
-/// Reads the emitters file and checks the wall-plug efficiencies against it.
-pub(super) fn load(args: &EmitterArgs, answers: &AnswerArgs) -> Result<Loaded, Stopped> {
-    let reading = files::read(&args.emitters, answers);
+/// Reads a file whose spectra are needed; refusals and open questions end the command.
+pub(super) fn spectra_of(path: &Path, answers: &AnswerArgs) -> Result<Reading, Stopped> {
+    let reading = files::read(path, answers);
     let exit = files::explain(&reading);
     match reading.outcome {
         Outcome::Read | Outcome::Warned => {}
@@ -46,6 +47,12 @@ pub(super) fn load(args: &EmitterArgs, answers: &AnswerArgs) -> Result<Loaded, S
     for warning in &reading.warnings {
         output::sentence(BadInput::at(&reading.file, &format!("warning: {warning}")));
     }
+    Ok(reading)
+}
+
+/// Reads the emitters file and checks the wall-plug efficiencies against it.
+pub(super) fn load(args: &EmitterArgs, answers: &AnswerArgs) -> Result<Loaded, Stopped> {
+    let reading = spectra_of(&args.emitters, answers)?;
     let named = reading.spectra.iter().map(|s| (s.name.as_str(), &s.spectrum));
     let sources = Sources::new(named).map_err(|e| Stopped::at(&reading.file, e))?;
     let wall_plug = args.wall_plug.clone().unwrap_or_default();

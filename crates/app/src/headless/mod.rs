@@ -7,6 +7,7 @@
 mod answer;
 mod args;
 mod asking;
+mod correct;
 mod exit;
 mod files;
 mod measure;
@@ -20,6 +21,7 @@ pub use args::{
     AnswerArgs, AxisAnswer, BudgetArgs, DecimalAnswer, EmitterArgs, LimitArgs, MaximiseChoice,
     OrdinateAnswer, OutputArgs, PerAnswer, SolvingArgs, TargetArgs,
 };
+pub use correct::CorrectArgs;
 pub use exit::{BadInput, Exit};
 pub use measure::MeasureArgs;
 pub use read::ReadArgs;
@@ -51,6 +53,8 @@ pub enum Command {
     Measure(MeasureArgs),
     /// See [`SolveArgs`].
     Solve(Box<SolveArgs>),
+    /// See [`CorrectArgs`].
+    Correct(CorrectArgs),
 }
 
 /// Runs the program with its arguments (the first is its own name) and returns its exit code.
@@ -70,6 +74,7 @@ fn perform(cli: &Cli) -> Exit {
         Some(Command::Read(args)) => read::run(args),
         Some(Command::Measure(args)) => measure::run(args),
         Some(Command::Solve(args)) => solve::run(args),
+        Some(Command::Correct(args)) => correct::run(args),
         None => Exit::Done,
     }
 }

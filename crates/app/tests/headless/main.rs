@@ -1,6 +1,7 @@
 //! The headless commands as a person runs them: the built program, its two streams and its exit code.
 
 mod arguments;
+mod correct;
 mod measure;
 mod read;
 mod solve;

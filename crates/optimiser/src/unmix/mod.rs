@@ -96,6 +96,18 @@ pub enum Doubt {
     },
 }
 
+impl Doubt {
+    /// The emitter the doubt is about, counted from 0; `None` when it is about the whole fit.
+    pub const fn emitter(&self) -> Option<usize> {
+        match self {
+            Self::MissingLight { .. } | Self::TooMuchLight { .. } => None,
+            Self::Alike { emitter } | Self::AtTheEnd { emitter } | Self::NotMeasured { emitter, .. } => {
+                Some(*emitter)
+            }
+        }
+    }
+}
+
 impl std::fmt::Display for Doubt {
     fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
         match self {
@@ -109,17 +121,14 @@ impl std::fmt::Display for Doubt {
                 "the fit has {:.1} % of the power too much, most of it near {near_nm:.0} nm: an emitter has changed its shape or moved",
                 100.0 * share
             ),
-            Self::Alike { emitter } => {
-                write!(f, "emitter {} cannot be told from the others; their shares are one sum", emitter + 1)
+            Self::Alike { .. } => {
+                f.write_str("it cannot be told from the others; only the sum of their shares has a meaning")
             }
-            Self::AtTheEnd { emitter } => {
-                write!(f, "the shift or stretch of emitter {} ran to the end of its range", emitter + 1)
-            }
-            Self::NotMeasured { emitter, share } => write!(
+            Self::AtTheEnd { .. } => f.write_str("its shift or stretch ran to the end of its range"),
+            Self::NotMeasured { share, .. } => write!(
                 f,
-                "{:.1} % of emitter {}'s light lies outside the measured range and is taken on trust",
-                100.0 * share,
-                emitter + 1
+                "{:.1} % of its light lies outside the measured range and is taken on trust",
+                100.0 * share
             ),
         }
     }
