@@ -3,6 +3,7 @@
 //! * [`State`]: the project with its history; [`State::apply`] is the only place the project changes.
 //! * [`Edit`]: every change, serialisable, with its inverse.
 //! * [`mixing`]: pure functions on shares: rebalancing, white-held pulls, conversions between kinds.
+//! * [`keeping`]: saving, the journal of unsaved changes, recovery.
 //! * [`demo`]: the demo projects the program carries.
 //! * [`derived`]: everything the window shows, computed from the project and remembered by content.
 //!
@@ -12,6 +13,7 @@ pub mod demo;
 pub mod derived;
 mod edit;
 mod history;
+pub mod keeping;
 mod make;
 pub mod mixing;
 
