@@ -8,6 +8,7 @@
 //! * [`spectrum_csv`]: the predicted spectrum.
 //! * [`cells`]: CSV cells that no spreadsheet takes for a formula.
 //! * [`digest`]: SHA-256 of a file's bytes.
+//! * [`tm27`]: one spectrum as ANSI/IES TM-27-14 XML.
 
 pub mod blend_sheet;
 pub mod cells;
@@ -17,3 +18,4 @@ pub mod project_file;
 pub mod read;
 pub mod save;
 pub mod spectrum_csv;
+pub mod tm27;

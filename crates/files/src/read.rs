@@ -12,9 +12,12 @@ mod columns;
 mod convert;
 mod decode;
 mod dialect;
+mod emitters;
 mod header;
+mod jcamp;
 mod judge;
 mod number;
+mod pairs;
 mod path;
 mod questions;
 mod reading;
@@ -25,6 +28,7 @@ mod spectrum;
 mod split;
 mod table;
 mod text;
+mod tm27;
 mod transposed;
 mod units;
 mod vocabulary;
@@ -34,13 +38,12 @@ pub use path::{MAX_FILE_BYTES, read_path};
 pub use reading::{DarkEstimate, Facts, Outcome, QUANTITIES, Question, Raw, ReadSpectrum, Reading};
 
 use reading::Draft;
-use sha2::{Digest, Sha256};
 
 /// Reads the spectra in `bytes`; `file_name` is shown in messages and names spectra without a header.
 ///
 /// Runs in time linear in the length of `bytes`. Any input is answered; see [`Outcome`].
 pub fn read_bytes(file_name: &str, bytes: &[u8], answers: &Answers) -> Reading {
-    let sha256 = hex(&Sha256::digest(bytes));
+    let sha256 = crate::digest::sha256(bytes);
     let draft = read_draft(file_name, bytes, answers);
     draft.finish(file_name, sha256)
 }
@@ -53,10 +56,28 @@ fn read_draft(file_name: &str, bytes: &[u8], answers: &Answers) -> Draft {
         Ok(decoded) => decoded,
         Err(message) => return Draft::refused(None, message),
     };
+    let name = stem(file_name);
+    let marked: Option<fn(&str, &str, &Answers) -> Draft> = if tm27::recognises(&decoded.text) {
+        Some(tm27::read)
+    } else if jcamp::recognises(&decoded.text) {
+        Some(jcamp::read)
+    } else {
+        None
+    };
+    if let Some(read) = marked {
+        let mut draft = read(name, &decoded.text, answers);
+        draft.facts.encoding = decoded.encoding;
+        draft.assumptions.splice(0..0, decoded.assumptions);
+        draft.warnings.splice(0..0, decoded.warnings);
+        return draft;
+    }
+    if sniff::looks_like_ron(&decoded.text) {
+        return emitters::read(bytes, answers);
+    }
     if let Some(what) = sniff::foreign_text(&decoded.text) {
         return Draft::refused(Some(1), what);
     }
-    text::read_text(stem(file_name), &decoded, answers)
+    text::read_text(name, &decoded, answers)
 }
 
 /// The file's name without folder and ending.
@@ -66,13 +87,4 @@ fn stem(file_name: &str) -> &str {
         Some(0) | None => base,
         Some(dot) => &base[..dot],
     }
-}
-
-fn hex(bytes: &[u8]) -> String {
-    use std::fmt::Write;
-    bytes.iter().fold(String::with_capacity(2 * bytes.len()), |mut text, byte| {
-        // Writing to a String cannot fail.
-        let _ = write!(text, "{byte:02x}");
-        text
-    })
 }

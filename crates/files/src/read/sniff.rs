@@ -65,8 +65,6 @@ pub(super) fn foreign_text(text: &str) -> Option<String> {
         markup(head)?
     } else if head.starts_with('{') || looks_like_json_list(head) {
         "JSON that is no spectrum this program knows"
-    } else if looks_like_ron(head) {
-        "RON that is no project of a version this program knows"
     } else {
         return None;
     };
@@ -102,9 +100,9 @@ fn looks_like_json_list(head: &str) -> bool {
     }
 }
 
-/// `Name(` or `(` followed by `field:`, after comments and attributes.
-fn looks_like_ron(head: &str) -> bool {
-    let mut rest = head;
+/// Whether a text starts like RON: `Name(` or `(` followed by `field:`, after comments and attributes.
+pub(super) fn looks_like_ron(text: &str) -> bool {
+    let mut rest = text.trim_start_matches(|c: char| c.is_whitespace() || c == '\0' || c == '\u{feff}');
     loop {
         rest = rest.trim_start();
         if rest.starts_with("#![enable") {

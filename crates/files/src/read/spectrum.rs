@@ -26,6 +26,11 @@ pub(super) fn unusable(samples: &Samples) -> Option<String> {
 
 /// Warnings and assumptions about samples left out, merged or reordered.
 pub(super) fn report(draft: &mut Draft, label: &str, samples: &Samples, layout: &Layout, many: bool) {
+    report_samples(draft, label, samples, !many || layout.series.len() < 2);
+}
+
+/// The same; columns that share an axis may end early without a word (`ends_too` false).
+pub(super) fn report_samples(draft: &mut Draft, label: &str, samples: &Samples, ends_too: bool) {
     let rows =
         |count: usize| if count == 1 { "1 sample was".to_owned() } else { format!("{count} samples were") };
     let at = samples.first_bad_line;
@@ -38,8 +43,7 @@ pub(super) fn report(draft: &mut Draft, label: &str, samples: &Samples, layout: 
     if samples.unreadable > 0 {
         draft.warn(format!("{label}{} left out as unreadable, line {at} first.", rows(samples.unreadable)));
     }
-    let missing =
-        samples.missing_inside + if many && layout.series.len() > 1 { 0 } else { samples.missing_at_ends };
+    let missing = samples.missing_inside + if ends_too { samples.missing_at_ends } else { 0 };
     if missing > 0 {
         draft.warn(format!(
             "{label}{} left out without a value, line {at} first; gaps are bridged by straight lines.",
@@ -129,7 +133,7 @@ pub(super) struct Open {
 }
 
 /// Decides what the ordinate is, listing every assumption and conversion.
-fn ordinate(
+pub(super) fn ordinate(
     draft: &mut Draft,
     hint: &OrdinateHint,
     name: &str,
