@@ -27,6 +27,7 @@ pub use measure::MeasureArgs;
 pub use read::ReadArgs;
 pub use solve::SolveArgs;
 
+use crate::window::{self, Renderer};
 use clap::{Parser, Subcommand};
 use std::{ffi::OsString, path::PathBuf, process::ExitCode};
 
@@ -42,6 +43,9 @@ pub struct Cli {
     /// A project, or spectra files, to open in the window
     #[arg(value_name = "PROJECT | FILES")]
     pub open: Vec<PathBuf>,
+    /// What draws the window
+    #[arg(long, value_enum, default_value_t)]
+    pub renderer: Renderer,
 }
 
 /// The headless commands.
@@ -64,18 +68,18 @@ where
     T: Into<OsString> + Clone,
 {
     match Cli::try_parse_from(arguments) {
-        Ok(cli) => perform(&cli).into(),
+        Ok(Cli { command: Some(command), .. }) => perform(&command).into(),
+        Ok(cli) => window::open(&cli.open, cli.renderer),
         Err(error) => usage::answer(&error).into(),
     }
 }
 
-fn perform(cli: &Cli) -> Exit {
-    match &cli.command {
-        Some(Command::Read(args)) => read::run(args),
-        Some(Command::Measure(args)) => measure::run(args),
-        Some(Command::Solve(args)) => solve::run(args),
-        Some(Command::Correct(args)) => correct::run(args),
-        None => Exit::Done,
+fn perform(command: &Command) -> Exit {
+    match command {
+        Command::Read(args) => read::run(args),
+        Command::Measure(args) => measure::run(args),
+        Command::Solve(args) => solve::run(args),
+        Command::Correct(args) => correct::run(args),
     }
 }
 

@@ -2,51 +2,121 @@
 
 use super::command::Command;
 use super::dialogs;
+use super::dialogs::import::{Asked, Imports, Source};
+use super::dialogs::paths::{Paths, Purpose};
+use super::notice::Notice;
+use super::proof::{self, Question, Solved};
+use super::session::{self, Session};
 use super::theme::{self, Palette};
 use super::view::{Proof, Scene, View};
 use super::wish::Wish;
 use super::{ledger, loom, top_bar};
+use crate::jobs::{Answer, Jobs};
+use crate::state::demo::{CABIN, LIBRARY};
 use crate::state::derived::{Cache, Derived};
 use crate::state::{Edit, State};
-use egui::{Context, Rect, Theme, Ui, ViewportCommand, pos2};
-use project::Project;
-use std::path::PathBuf;
+use egui::{Context, Event, Frame, Margin, Panel, Rect, RichText, Theme, Ui, ViewportCommand, pos2};
+use files::read::Reading;
+use project::{Project, SetId};
+use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 /// Width of the ledger.
 const LEDGER_WIDTH: f32 = 372.0;
 /// Room round the sheets.
 const GAP: f32 = 12.0;
+/// Largest file looked at.
+const GREATEST_FILE: u64 = files::read::MAX_FILE_BYTES;
+
+/// What background jobs answer.
+enum Done {
+    Solved(Box<Option<Solved>>),
+    Read(Box<Reading>),
+}
+
+/// An answer of the solver, and the shares it gave.
+struct Kept {
+    set: SetId,
+    question: Question,
+    /// The shares it belongs to; `None` for a refusal, which holds for any.
+    shares: Option<Vec<f64>>,
+    proof: Proof,
+}
 
 /// The window: the project being edited and everything shown of it.
 pub struct Window {
     state: State,
     cache: Cache,
     view: View,
-    proof: Option<(u64, Proof)>,
+    jobs: Jobs<Done>,
+    kept: Vec<Kept>,
+    paths: Paths,
+    imports: Imports,
+    notice: Notice,
+    session: Session,
+    demonstration: bool,
     title: String,
     zoom: f32,
 }
 
 impl Window {
-    /// The window on a project or on spectra files; on the demonstration when there are none.
+    /// The window on a project or on spectra files; on the demonstration when there are none. Changes are journalled.
     pub fn open(context: &Context, files: &[PathBuf]) -> Self {
-        let _ = files;
-        let state = State::new(demo(), None).expect("the demonstration is a valid project");
-        Self::on(context, state)
+        let mut window = Self::on(context, session::demonstration(CABIN));
+        window.demonstration = true;
+        let mut problem = None;
+        let mut spectra = Vec::new();
+        for path in files {
+            if path.extension().is_some_and(|e| e.eq_ignore_ascii_case("ron")) {
+                match window.session.open(path) {
+                    Ok(state) => window.replace(state),
+                    Err(error) => problem = Some(error),
+                }
+            } else {
+                spectra.push(path.clone());
+            }
+        }
+        if !spectra.is_empty() && window.demonstration {
+            window.replace(empty_state());
+        }
+        let on_disk = std::mem::take(&mut window.session);
+        window.session = Session::journalled(&window.state).continuing(on_disk);
+        window.bring_in(context, &spectra);
+        if let Some(problem) = problem {
+            window.say(context, problem);
+        }
+        window
     }
 
-    /// The window on a state.
+    /// The window on a state, with no journal and no system dialogs: for tests and pictures.
     pub fn on(context: &Context, state: State) -> Self {
         theme::install(context);
+        let repaint = {
+            let context = context.clone();
+            Arc::new(move || context.request_repaint())
+        };
         Self {
             state,
             cache: Cache::new(),
             view: View::default(),
-            proof: None,
+            jobs: Jobs::for_this_machine(repaint),
+            kept: Vec::new(),
+            paths: Paths::default(),
+            imports: Imports::default(),
+            notice: Notice::default(),
+            session: Session::default(),
+            demonstration: false,
             title: String::new(),
             zoom: 0.0,
         }
+    }
+
+    /// The window on the demonstration, with no journal and no system dialogs: for tests and pictures.
+    pub fn on_demonstration(context: &Context) -> Self {
+        let mut window = Self::on(context, session::demonstration(CABIN));
+        window.demonstration = true;
+        window.paths.without_dialogs = true;
+        window
     }
 
     /// The project being edited.
@@ -59,20 +129,47 @@ impl Window {
         self.cache.of(&self.state)
     }
 
+    /// True while a solve runs.
+    pub fn is_solving(&self) -> bool {
+        self.jobs.progress_of("solve").is_some()
+    }
+
+    /// The solver's last word on the blend as it stands, as the ledger shows it.
+    pub fn proof_words(&self) -> Option<&str> {
+        self.proof().map(|proof| proof.words.as_str())
+    }
+
     /// Work before a frame that paints nothing.
     pub(super) fn before_frame(&mut self, context: &Context) {
         self.fit(context);
+        let before = self.state.revision();
+        for finished in self.jobs.poll() {
+            match finished.answer {
+                Answer::Done(Done::Solved(solved)) => self.solved(context, *solved),
+                Answer::Done(Done::Read(reading)) => self.imports.read(*reading),
+                Answer::Panicked(message) => {
+                    self.say(context, format!("The work stopped unexpectedly: {message}"));
+                }
+            }
+        }
+        if let Some((purpose, paths)) = self.paths.poll() {
+            self.chosen(context, purpose, &paths);
+        }
+        self.take_dropped(context);
+        if self.state.revision() != before {
+            self.journal(context);
+        }
     }
 
     /// Keeps text at a comfortable size for the room the window has.
     fn fit(&mut self, context: &Context) {
         let zoom = context.zoom_factor();
         let size = context.content_rect().size() * zoom;
-        if size.x < 100.0 {
+        if size.x < 100.0 || size.x > 20_000.0 {
             return;
         }
         let wanted = theme::comfortable_zoom(size.x, size.y);
-        // A zoom the user chose by keys stays until the window's own choice changes.
+        // A size the user chose by keys stays until the window's own choice changes.
         if (wanted - self.zoom).abs() > 0.001 {
             self.zoom = wanted;
             context.set_zoom_factor(wanted);
@@ -81,38 +178,61 @@ impl Window {
 
     /// Draws a frame.
     pub(super) fn frame(&mut self, ui: &mut Ui) {
-        let mut wishes: Vec<Wish> = Command::pressed(ui.ctx()).into_iter().map(Wish::Command).collect();
+        let context = ui.ctx().clone();
+        let mut wishes: Vec<Wish> = Command::pressed(&context).into_iter().map(Wish::Command).collect();
+        self.pasted(&context);
+        self.recovery(ui);
         let derived = self.cache.of(&self.state);
-        let scene = Scene {
-            palette: Palette::of(ui.ctx()),
-            state: &self.state,
-            derived: &derived,
-            proof: self.proof.as_ref().filter(|(r, _)| *r == self.state.revision()).map(|(_, p)| p),
-            solving: None,
-        };
         let saved = self.saved();
-        self.view.dialog_open = self.view.details.is_some();
-        let full = ui.max_rect();
-        ui.painter().rect_filled(full, 0.0, scene.palette.ground);
-        let bar = Rect::from_min_max(full.min, pos2(full.right(), full.top() + top_bar::HEIGHT));
-        top_bar::show(ui, bar, &scene, &saved, &mut wishes);
-        let body = Rect::from_min_max(pos2(full.left(), bar.bottom()), full.max).shrink(GAP);
-        let split = body.right() - LEDGER_WIDTH;
-        let loom_rect = Rect::from_min_max(body.min, pos2(split - GAP, body.bottom()));
-        let ledger_rect = Rect::from_min_max(pos2(split, body.top()), body.max);
-        ui.push_id("loom", |ui| loom::show(ui, loom_rect, &scene, &mut self.view, &mut wishes));
-        ui.push_id("ledger", |ui| ledger::show(ui, ledger_rect, &scene, &mut self.view, &mut wishes));
-        dialogs::emitter::show(ui, &scene, &mut self.view, &mut wishes);
+        self.view.dialog_open = self.view.details.is_some() || self.paths.is_open() || self.imports.is_open();
+        let mut view = std::mem::take(&mut self.view);
+        {
+            let scene = Scene {
+                palette: Palette::of(&context),
+                state: &self.state,
+                derived: &derived,
+                proof: self.proof(),
+                solving: self.jobs.progress_of("solve").map(|job| job.progress),
+            };
+            draw(ui, &scene, &saved, &mut view, &mut wishes);
+        }
+        self.view = view;
         drop(derived);
-        self.grant(ui.ctx(), wishes);
-        self.set_title(ui.ctx());
+        if let Some((purpose, paths)) = self.paths.show(ui) {
+            self.chosen(&context, purpose, &paths);
+        }
+        for asked in self.imports.show(ui, self.state.current_set().is_some()) {
+            self.imported(&context, asked);
+        }
+        self.notice.show(ui);
+        self.grant(&context, wishes);
+        self.set_title(&context);
+    }
+
+    fn proof(&self) -> Option<&Proof> {
+        let set = self.state.current_set()?;
+        let question = Question::of(self.state.project(), set);
+        self.kept
+            .iter()
+            .rev()
+            .find(|kept| {
+                kept.set == set.id
+                    && kept.question == question
+                    && kept
+                        .shares
+                        .as_ref()
+                        .is_none_or(|shares| set.members.iter().map(|m| m.share).eq(shares.iter().copied()))
+            })
+            .map(|kept| &kept.proof)
     }
 
     fn saved(&self) -> String {
         match (self.state.path(), self.state.unsaved()) {
             (Some(_), false) => "saved".to_owned(),
             (Some(_), true) => "changed since saved".to_owned(),
-            (None, _) => "not saved to a file".to_owned(),
+            (None, _) if self.demonstration => "demonstration, invented data".to_owned(),
+            (None, false) => "new".to_owned(),
+            (None, true) => "not saved yet".to_owned(),
         }
     }
 
@@ -130,96 +250,375 @@ impl Window {
         let before = self.state.revision();
         for wish in wishes {
             match wish {
-                Wish::Edit(edit) => self.apply(edit),
+                Wish::Edit(edit) => self.apply(context, edit),
                 Wish::Begin(label) => self.state.begin_gesture(label),
                 Wish::End => self.state.end_gesture(),
                 Wish::Cancel => self.state.cancel_gesture(),
-                Wish::Say(words) => self.say(words),
+                Wish::Say(words) => self.say(context, words),
                 Wish::Command(command) => self.run(context, command),
             }
         }
+        self.journal(context);
         if self.state.revision() != before {
             // What was drawn is out of date: draw this frame again before it is shown.
             context.request_discard("the project changed");
         }
     }
 
-    fn apply(&mut self, edit: Edit) {
-        if let Err(error) = self.state.apply(edit) {
-            self.say(error.to_string());
+    fn journal(&mut self, context: &Context) {
+        if let Err(problem) = self.session.keep(&mut self.state) {
+            self.say(context, problem);
         }
     }
 
-    fn say(&mut self, _words: String) {}
+    fn apply(&mut self, context: &Context, edit: Edit) {
+        if let Err(error) = self.state.apply(edit) {
+            let mut words = error.to_string();
+            if let Some(first) = words.get(..1).map(str::to_uppercase) {
+                words.replace_range(..1, &first);
+            }
+            self.say(context, words);
+        }
+    }
+
+    fn say(&mut self, context: &Context, words: String) {
+        self.notice.say(words, context.time());
+    }
+
+    fn replace(&mut self, state: State) {
+        self.jobs.cancel_all();
+        self.state = state;
+        self.cache.forget_revision();
+        self.view.pull = None;
+        self.view.details = None;
+        self.kept.clear();
+        self.demonstration = false;
+        self.session.restart(&self.state);
+    }
 
     fn run(&mut self, context: &Context, command: Command) {
         match command {
+            Command::New => self.replace_kept(context, empty_state()),
+            Command::OpenDemo => {
+                self.replace_kept(context, session::demonstration(CABIN));
+                self.demonstration = true;
+            }
+            Command::OpenLibrary => {
+                self.replace_kept(context, session::demonstration(LIBRARY));
+                self.demonstration = true;
+            }
+            Command::Open => self.paths.ask(context, Purpose::OpenProject, ""),
+            Command::Save => match self.state.path().map(Path::to_path_buf) {
+                Some(path) => self.save(context, &path),
+                None => self.ask_save(context),
+            },
+            Command::SaveAs => self.ask_save(context),
+            Command::Import => self.paths.ask(context, Purpose::ImportSpectra, ""),
+            Command::Paste => context.send_viewport_cmd(ViewportCommand::RequestPaste),
+            Command::ExportSheetRon | Command::ExportSheetCsv | Command::ExportSpectrum => {
+                if let Some(purpose) = session::export_purpose(command) {
+                    let name = self.state.current_set().map_or("blend", |set| set.name.as_str());
+                    let what = if purpose == Purpose::SpectrumCsv { "spectrum" } else { "blend sheet" };
+                    let name = format!("{}.{}", file_name(&format!("{name} {what}")), purpose.ending());
+                    self.paths.ask(context, purpose, &name);
+                }
+            }
             Command::Undo => {
+                self.view.pull = None;
                 self.state.undo();
             }
             Command::Redo => {
+                self.view.pull = None;
                 self.state.redo();
             }
+            Command::Solve => self.solve(context),
+            Command::StopSolving => self.jobs.cancel("solve"),
             Command::HoldWhite => self.view.hold_white = !self.view.hold_white,
+            Command::AddSet => {
+                let edit = self.state.adding_set("New set");
+                self.apply(context, edit);
+            }
+            Command::DuplicateSet => {
+                if let Some(edit) = self.state.current_set().and_then(|set| self.state.duplicating(set.id)) {
+                    self.apply(context, edit);
+                }
+            }
+            Command::RemoveSet => {
+                if let Some(set) = self.state.current_set().map(|set| set.id) {
+                    self.apply(context, Edit::RemoveSet(set));
+                }
+            }
             Command::Appearance => {
                 let other = if context.theme() == Theme::Dark { Theme::Light } else { Theme::Dark };
                 context.set_theme(other);
             }
             Command::Quit => context.send_viewport_cmd(ViewportCommand::Close),
-            _ => {}
+        }
+    }
+
+    /// Puts another project in place as an edit, so that undo brings the one before back.
+    fn replace_kept(&mut self, context: &Context, state: State) {
+        if !self.state.unsaved() {
+            self.replace(state);
+            return;
+        }
+        let project = state.project().clone();
+        self.apply(context, Edit::ReplaceProject(Box::new(project)));
+        self.demonstration = false;
+        self.say(context, "The project before was not saved: undo brings it back.".to_owned());
+    }
+
+    fn ask_save(&mut self, context: &Context) {
+        let name = format!("{}.ron", file_name(&self.state.project().name));
+        self.paths.ask(context, Purpose::SaveProject, &name);
+    }
+
+    fn save(&mut self, context: &Context, path: &Path) {
+        self.state.end_gesture();
+        match self.session.save(&mut self.state, path) {
+            Ok(()) => {
+                self.demonstration = false;
+                self.say(context, format!("Saved as {}.", path.display()));
+            }
+            Err(problem) => self.say(context, problem),
+        }
+    }
+
+    fn chosen(&mut self, context: &Context, purpose: Purpose, paths: &[PathBuf]) {
+        let Some(first) = paths.first() else { return };
+        match purpose {
+            Purpose::OpenProject => self.open_file(context, first),
+            Purpose::SaveProject => {
+                let path =
+                    if first.extension().is_some() { first.clone() } else { first.with_extension("ron") };
+                self.save(context, &path);
+            }
+            Purpose::ImportSpectra => self.bring_in(context, paths),
+            Purpose::SheetRon | Purpose::SheetCsv | Purpose::SpectrumCsv => {
+                let Some(set) = self.state.current_set().map(|set| set.id) else { return };
+                let proof = self.proof().map(|proof| proof.words.clone());
+                let words = match session::export(&self.state, set, proof, purpose, first) {
+                    Ok(()) => format!("Written to {}.", first.display()),
+                    Err(problem) => problem,
+                };
+                self.say(context, words);
+            }
+        }
+        context.request_repaint();
+    }
+
+    fn open_file(&mut self, context: &Context, path: &Path) {
+        match self.session.open(path) {
+            Ok(state) => {
+                let unsaved = self.state.unsaved();
+                let before = unsaved.then(|| self.state.project().clone());
+                self.replace(state);
+                if let Some(before) = before {
+                    // The project left unsaved stays one undo away.
+                    self.leave_before(context, before);
+                }
+            }
+            Err(problem) => self.say(context, problem),
+        }
+    }
+
+    fn leave_before(&mut self, context: &Context, before: Project) {
+        let opened = self.state.project().clone();
+        let path = self.state.path().map(Path::to_path_buf);
+        if let Ok(mut state) = State::new(before, path.clone())
+            && state.apply(Edit::ReplaceProject(Box::new(opened))).is_ok()
+        {
+            let revision = state.revision();
+            if let Some(path) = path {
+                state.mark_saved(path, revision);
+            }
+            self.state = state;
+            self.cache.forget_revision();
+            self.say(context, "The project before was not saved: undo brings it back.".to_owned());
+        }
+    }
+
+    /// Reads files and shows what a reader makes of them.
+    fn bring_in(&mut self, context: &Context, paths: &[PathBuf]) {
+        for path in paths {
+            let name = path
+                .file_name()
+                .map_or_else(|| path.display().to_string(), |n| n.to_string_lossy().into_owned());
+            let size = std::fs::metadata(path).map(|about| about.len());
+            match size {
+                Ok(size) if size > GREATEST_FILE => {
+                    self.say(context, format!("{name} is larger than any spectra file this program reads."));
+                }
+                Ok(_) => match std::fs::read(path) {
+                    Ok(bytes) => self.imports.add(Source { name, bytes: Arc::new(bytes) }),
+                    Err(error) => self.say(context, format!("{name} could not be read: {error}")),
+                },
+                Err(error) => self.say(context, format!("{name} could not be read: {error}")),
+            }
+        }
+    }
+
+    fn take_dropped(&mut self, context: &Context) {
+        let dropped = context.input(|i| i.raw.dropped_files.clone());
+        for file in dropped {
+            let path = file.path().to_path_buf();
+            if path.extension().is_some_and(|e| e.eq_ignore_ascii_case("ron")) {
+                self.open_file(context, &path);
+            } else {
+                self.bring_in(context, &[path]);
+            }
+        }
+    }
+
+    /// A table pasted outside any text field is read like a file.
+    fn pasted(&mut self, context: &Context) {
+        if context.text_edit_focused() || self.paths.is_open() || self.imports.is_open() {
+            return;
+        }
+        let pasted = context.input_mut(|input| {
+            let at = input.events.iter().position(|event| matches!(event, Event::Paste(_)))?;
+            match input.events.remove(at) {
+                Event::Paste(text) => Some(text),
+                _ => None,
+            }
+        });
+        if let Some(text) = pasted.filter(|text| !text.trim().is_empty()) {
+            self.imports.add(Source { name: "pasted table".to_owned(), bytes: Arc::new(text.into_bytes()) });
+        }
+    }
+
+    fn imported(&mut self, context: &Context, asked: Asked) {
+        match asked {
+            Asked::Read(source, answers) => {
+                self.jobs.start("read", self.state.revision(), move |_| {
+                    Done::Read(Box::new(files::read::read_bytes(&source.name, &source.bytes, &answers)))
+                });
+            }
+            Asked::Take(emitters, into_set) => {
+                if emitters.is_empty() {
+                    return;
+                }
+                if self.state.current_set().is_none() {
+                    let set = self.state.adding_set("Set A");
+                    self.apply(context, set);
+                }
+                let set = self
+                    .state
+                    .current_set()
+                    .map(|set| set.id)
+                    .filter(|_| into_set || self.state.project().emitters.is_empty());
+                let edit = self.state.adding(emitters, set);
+                self.apply(context, edit);
+                self.journal(context);
+                context.request_discard("emitters were added");
+            }
+        }
+    }
+
+    /// Offers what an ended window left unsaved.
+    fn recovery(&mut self, ui: &mut Ui) {
+        let Some(left) = self.session.left_behind.last() else { return };
+        let words = format!(
+            "\u{201c}{}\u{201d} had changes that were not saved when the program last ended.",
+            left.header.base.name
+        );
+        let palette = Palette::of(ui.ctx());
+        let frame = Frame::new().fill(palette.accent_wash).inner_margin(Margin::symmetric(16, 6));
+        let (mut back, mut discard) = (false, false);
+        Panel::top("recovery").frame(frame).show(ui, |ui| {
+            ui.horizontal(|ui| {
+                ui.label(RichText::new(words).color(palette.ink));
+                back = ui.button("Bring them back").clicked();
+                discard = ui.button("Discard them").clicked();
+            });
+        });
+        if back && let Some(state) = self.session.bring_back() {
+            match state {
+                Ok(state) => self.replace(state),
+                Err(problem) => {
+                    let context = ui.ctx().clone();
+                    self.say(&context, format!("The changes could not be brought back: {problem}"));
+                }
+            }
+        }
+        if discard {
+            self.session.discard();
+        }
+    }
+
+    fn solve(&mut self, context: &Context) {
+        let Some(set) = self.state.current_set().map(|set| set.id) else { return };
+        self.state.end_gesture();
+        let project = self.state.project().clone();
+        self.jobs.start("solve", self.state.revision(), move |token| {
+            Done::Solved(Box::new(proof::solve(&project, set, token)))
+        });
+        context.request_repaint();
+    }
+
+    fn solved(&mut self, context: &Context, solved: Option<Solved>) {
+        let Some(solved) = solved else { return };
+        let Some(set) = self.state.project().set(solved.set).cloned() else { return };
+        if Question::of(self.state.project(), &set) != solved.question {
+            self.say(context, "The targets or emitters changed while solving: solve again.".to_owned());
+            return;
+        }
+        let proof = solved.proof(&set);
+        let edit = solved.edit(&set);
+        let found = edit.is_some();
+        if let Some(edit) = edit {
+            self.apply(context, Edit::Together { label: "solve".to_owned(), edits: vec![edit] });
+        }
+        let shares = self
+            .state
+            .project()
+            .set(set.id)
+            .filter(|_| found)
+            .map(|set| set.members.iter().map(|m| m.share).collect());
+        self.kept.push(Kept { set: set.id, question: solved.question, shares, proof });
+        if self.kept.len() > 200 {
+            self.kept.remove(0);
+        }
+        context.request_repaint();
+    }
+}
+
+impl Drop for Window {
+    fn drop(&mut self) {
+        self.jobs.cancel_all();
+        self.state.end_gesture();
+        // A journal that is not empty stays: the next start offers it.
+        let kept = self.session.keep(&mut self.state).is_ok();
+        if kept && !self.state.unsaved() {
+            self.session.finish();
         }
     }
 }
 
-fn demo() -> Project {
-    let mut p = Project::new("Night-ferry cabin panel");
-    let mut set = project::EmitterSet {
-        id: project::SetId(100),
-        name: "Set A".into(),
-        note: String::new(),
-        members: vec![],
-        white: project::WhiteSpec::default(),
-    };
-    for (k, (name, peak, width, share)) in [
-        ("Kingfisher blue", 458.0, 27.0, 0.12),
-        ("Reed teal", 497.0, 37.0, 0.0),
-        ("Fern green", 531.0, 55.0, 0.252),
-        ("Brass amber", 586.0, 70.0, 0.302),
-        ("Rowan red", 627.0, 46.0, 0.326),
-    ]
-    .into_iter()
-    .enumerate()
-    {
-        let w: Vec<f64> = (380..=780).map(f64::from).collect();
-        let s: Vec<f64> =
-            w.iter().map(|x: &f64| (-4.0 * 2f64.ln() * ((x - peak) / width).powi(2)).exp()).collect();
-        let id = project::EmitterId(k as u64 + 1);
-        p.emitters.push(project::Emitter {
-            id,
-            name: name.into(),
-            invented: true,
-            note: String::new(),
-            import: project::Import { wavelengths_nm: w, power_per_nm: s, ..Default::default() },
-            corrections: vec![],
-            geometry: Default::default(),
-            origin: Default::default(),
-            mounting: Default::default(),
-            instrument_range_nm: None,
-            wall_plug: Some(0.3),
-            sheet: Default::default(),
-        });
-        let mut m = project::Member::new(id);
-        m.share = share;
-        m.locked = k == 3;
-        m.on = k != 1;
-        set.members.push(m);
-    }
-    set.white.limits.ra = project::Limit::at_least(90.0);
-    set.white.limits.r9 = project::Limit::at_least(60.0);
-    set.white.limits.rg = project::Limit::between(95.0, 105.0);
-    set.white.limits.efficacy = project::Limit::at_least(125.0);
-    set.white.region = project::Region::Quadrangle { nominal_k: 3000 };
-    p.next_id = 200;
-    p.sets.push(set);
-    p
+fn draw(ui: &mut Ui, scene: &Scene<'_>, saved: &str, view: &mut View, wishes: &mut Vec<Wish>) {
+    let full = ui.available_rect_before_wrap();
+    ui.painter().rect_filled(ui.max_rect(), 0.0, scene.palette.ground);
+    let bar = Rect::from_min_max(full.min, pos2(full.right(), full.top() + top_bar::HEIGHT));
+    top_bar::show(ui, bar, scene, saved, wishes);
+    let body = Rect::from_min_max(pos2(full.left(), bar.bottom()), full.max).shrink(GAP);
+    let split = body.right() - LEDGER_WIDTH;
+    let loom_rect = Rect::from_min_max(body.min, pos2(split - GAP, body.bottom()));
+    let ledger_rect = Rect::from_min_max(pos2(split, body.top()), body.max);
+    ui.push_id("loom", |ui| loom::show(ui, loom_rect, scene, view, wishes));
+    ui.push_id("ledger", |ui| ledger::show(ui, ledger_rect, scene, view, wishes));
+    dialogs::emitter::show(ui, scene, view, wishes);
+}
+
+fn empty_state() -> State {
+    State::new(Project::new("New project"), None).expect("an empty project is valid")
+}
+
+/// A name that every file system takes.
+fn file_name(name: &str) -> String {
+    let plain: String = name
+        .chars()
+        .map(|c| if c.is_alphanumeric() || matches!(c, '-' | '_' | ' ') { c } else { '-' })
+        .collect();
+    let plain = plain.trim().replace(' ', "-").to_lowercase();
+    if plain.is_empty() { "whitesmith".to_owned() } else { plain }
 }

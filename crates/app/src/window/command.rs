@@ -7,6 +7,7 @@ use egui::{Key, KeyboardShortcut, Modifiers};
 pub(super) enum Command {
     New,
     OpenDemo,
+    OpenLibrary,
     Open,
     Save,
     SaveAs,
@@ -46,7 +47,8 @@ impl Command {
     pub(super) const fn words(self) -> &'static str {
         match self {
             Self::New => "New project",
-            Self::OpenDemo => "Open the demonstration",
+            Self::OpenDemo => "Demonstration: night-ferry cabin",
+            Self::OpenLibrary => "Demonstration: night-ferry library",
             Self::Open => "Open project\u{2026}",
             Self::Save => "Save",
             Self::SaveAs => "Save as\u{2026}",

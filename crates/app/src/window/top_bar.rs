@@ -194,7 +194,7 @@ fn main_menu(ui: &mut Ui, scene: &Scene<'_>, wishes: &mut Vec<Wish>) {
             }
         }
     };
-    group(ui, "", true, &[Command::New, Command::Open, Command::OpenDemo, Command::Save, Command::SaveAs]);
+    group(ui, "", true, &[Command::New, Command::Open, Command::Save, Command::SaveAs]);
     group(ui, "Bring in", true, &[Command::Import, Command::Paste]);
     group(
         ui,
@@ -202,5 +202,6 @@ fn main_menu(ui: &mut Ui, scene: &Scene<'_>, wishes: &mut Vec<Wish>) {
         exportable,
         &[Command::ExportSheetRon, Command::ExportSheetCsv, Command::ExportSpectrum],
     );
+    group(ui, "Look around", true, &[Command::OpenDemo, Command::OpenLibrary]);
     group(ui, "", true, &[Command::Quit]);
 }

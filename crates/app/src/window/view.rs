@@ -3,8 +3,8 @@
 use super::dialogs::emitter::Details;
 use super::loom::Pull;
 use super::theme::Palette;
-use crate::state::State;
 use crate::state::derived::Derived;
+use crate::state::{Edit, State};
 use project::EmitterId;
 use std::collections::BTreeSet;
 
@@ -25,9 +25,18 @@ pub(super) struct Proof {
     /// The sentence.
     pub(super) words: String,
     /// What could be done about it, when the answer was no.
-    pub(super) ways_out: Vec<String>,
+    pub(super) ways_out: Vec<WayOut>,
     /// True when every limit could be met.
     pub(super) met: bool,
+}
+
+/// Something that could be done when the answer was no.
+#[derive(Debug, Clone, PartialEq)]
+pub(super) struct WayOut {
+    pub(super) words: String,
+    pub(super) edit: Edit,
+    /// Solve again afterwards.
+    pub(super) solve: bool,
 }
 
 /// The pictures and edits that can be opened inside the ledger.

@@ -11,8 +11,9 @@ use super::plots;
 use super::theme::text;
 use super::view::{Scene, Section, View};
 use super::wish::Wish;
+use egui::accesskit::Role;
 use egui::scroll_area::ScrollSource;
-use egui::{Align2, Rect, ScrollArea, Sense, Stroke, Ui, UiBuilder, pos2, vec2};
+use egui::{Align2, CornerRadius, Rect, ScrollArea, Sense, Stroke, Ui, UiBuilder, WidgetInfo, pos2, vec2};
 
 /// Height of the heading.
 const HEADING: f32 = 32.0;
@@ -122,11 +123,11 @@ fn caution(ui: &mut Ui, width: f32, words: &str, scene: &Scene<'_>) {
 /// The ledger's last line.
 struct Proof {
     words: std::sync::Arc<egui::Galley>,
-    ways: Option<std::sync::Arc<egui::Galley>>,
     height: f32,
 }
 
 const PROOF_LABEL: f32 = 50.0;
+const WAY_HEIGHT: f32 = 24.0;
 
 impl Proof {
     fn of(ui: &Ui, width: f32, scene: &Scene<'_>) -> Self {
@@ -144,13 +145,10 @@ impl Proof {
                 palette.muted,
             ),
         };
-        let room = width - PROOF_LABEL;
-        let words = ui.painter().layout(words, text::small(), colour, room);
-        let ways = scene.proof.filter(|p| !p.ways_out.is_empty() && scene.solving.is_none()).map(|proof| {
-            ui.painter().layout(proof.ways_out.join("\n"), text::small_strong(), palette.accent, room)
-        });
-        let height = words.size().y + ways.as_ref().map_or(0.0, |w| w.size().y + 4.0) + 14.0;
-        Self { words, ways, height }
+        let words = ui.painter().layout(words, text::small(), colour, width - PROOF_LABEL);
+        let ways = scene.proof.filter(|_| scene.solving.is_none()).map_or(0, |p| p.ways_out.len());
+        let height = words.size().y + ways as f32 * WAY_HEIGHT + 16.0;
+        Self { words, height }
     }
 
     fn show(self, ui: &Ui, rect: Rect, scene: &Scene<'_>, wishes: &mut Vec<Wish>) {
@@ -166,16 +164,41 @@ impl Proof {
             palette.muted,
         );
         let at = pos2(rect.left() + PROOF_LABEL, rect.top() + 10.0);
-        let spoken = self.words.text().to_owned();
-        let below = at + vec2(0.0, self.words.size().y + 4.0);
+        let spoken = format!("Proof: {}", self.words.text());
+        let mut y = at.y + self.words.size().y + 4.0 + WAY_HEIGHT / 2.0;
+        let response = ui.interact(
+            Rect::from_min_size(at, self.words.size()),
+            ui.scope_id().with("proof"),
+            Sense::hover(),
+        );
+        response.widget_info(|| WidgetInfo::labeled(Role::Label, true, &spoken));
         painter.galley(at, self.words, palette.ink);
-        let response = ui.interact(rect, ui.scope_id().with("proof"), Sense::hover());
-        response.widget_info(|| {
-            egui::WidgetInfo::labeled(egui::accesskit::Role::Label, true, format!("Proof: {spoken}"))
-        });
-        if let Some(ways) = self.ways {
-            painter.galley(below, ways, palette.accent);
+        let Some(proof) = scene.proof.filter(|_| scene.solving.is_none()) else { return };
+        for (k, way) in proof.ways_out.iter().enumerate() {
+            let size = measure(painter, &way.words, text::small_strong());
+            let area = Rect::from_min_size(pos2(at.x - 5.0, y - 10.0), vec2(size.x + 26.0, 20.0));
+            let response = ui.interact(area, ui.scope_id().with(("way out", k)), Sense::click());
+            response.widget_info(|| WidgetInfo::labeled(Role::Button, true, &way.words));
+            if response.hovered() || response.has_focus() {
+                painter.rect_filled(area, CornerRadius::same(4), palette.accent_wash);
+            }
+            write(
+                painter,
+                pos2(at.x, y),
+                Align2::LEFT_CENTER,
+                &way.words,
+                text::small_strong(),
+                palette.accent,
+            );
+            icon(painter, Icon::Closed, pos2(area.right() - 9.0, y), 8.0, palette.accent);
+            super::controls::focus_ring(ui, &response, 4);
+            if response.clicked() {
+                wishes.push(Wish::Edit(way.edit.clone()));
+                if way.solve {
+                    wishes.push(Wish::Command(Command::Solve));
+                }
+            }
+            y += WAY_HEIGHT;
         }
-        let _ = (wishes, Command::Solve, measure as fn(&egui::Painter, &str, egui::FontId) -> egui::Vec2);
     }
 }

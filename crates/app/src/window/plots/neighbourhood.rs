@@ -198,6 +198,16 @@ fn steps(painter: &Painter, map: &Map, target: UvPrime, half: f64, palette: &Pal
     }
 }
 
+/// Whether a small label has room at a place: inside the picture and clear of the figures in its corners.
+fn free(rect: &Rect, place: Pos2) -> bool {
+    let corner = |from: Pos2, width: f32| (place.x - from.x).abs() < width && (place.y - from.y).abs() < 26.0;
+    rect.shrink2(vec2(18.0, 9.0)).contains(place)
+        && !corner(rect.left_top(), 82.0)
+        && !corner(rect.right_top(), 150.0)
+        && !corner(rect.left_bottom(), 142.0)
+        && !corner(rect.right_bottom(), 84.0)
+}
+
 fn planckian(painter: &Painter, map: &Map, half: f64, aspect: f64, palette: &Palette) {
     let near = |p: UvPrime| {
         (p.u - map.centre.u).abs() < half * aspect * 1.3 && (p.v - map.centre.v).abs() < half * 1.6
@@ -237,7 +247,7 @@ fn planckian(painter: &Painter, map: &Map, half: f64, aspect: f64, palette: &Pal
                     1.0
                 };
             let place = at + across * (13.0 * away);
-            if map.rect.shrink2(vec2(18.0, 9.0)).contains(place) && at.distance(map.at(map.centre)) > 26.0 {
+            if free(&map.rect, place) && at.distance(map.at(map.centre)) > 26.0 {
                 halo(painter, place, Align2::CENTER_CENTER, &words, palette);
             }
         }
