@@ -3,7 +3,8 @@
 //! A channel that must give the photon current D at current density J takes the area `a = D/(J·EQE)` and the
 //! power `10·D·V/EQE`. The least power under `Σa ≤ fill` is found through its price µ on area: each channel
 //! minimises `V/EQE·10 + µ/(J·EQE)` alone, and µ is raised until the areas fit. Where a channel's curve is
-//! not convex the prices may leave area unused; exchanges between pairs of channels then use it up.
+//! not convex the prices leave a gap; all grids are then merged under the budget, and exchanges of area between
+//! pairs of channels refine the result.
 
 use std::sync::Arc;
 
@@ -12,6 +13,8 @@ use crate::working::Characteristic;
 
 /// Currents looked at before refining.
 const GRID: usize = 160;
+/// Bins of area in which [`merge`] keeps one partial choice each.
+const MERGE_BINS: usize = 2000;
 /// Rounds of pair exchanges, far more than are ever needed.
 const EXCHANGE_ROUNDS: usize = 30;
 
@@ -29,6 +32,8 @@ pub(crate) struct Item {
     characteristic: Arc<Characteristic>,
     scale: f64,
     grid: Vec<Point>,
+    /// The cheapest point of all, whatever its area.
+    free: Option<Point>,
 }
 
 impl Item {
@@ -40,15 +45,18 @@ impl Item {
             return None;
         }
         let (low, high) = characteristic.range();
-        let mut item = Item { characteristic, scale, grid: Vec::new() };
-        item.grid = (0..=GRID)
-            .map(|k| match k {
-                0 => low,
-                GRID => high,
-                k => low * (high / low).powf(k as f64 / GRID as f64),
-            })
-            .map(|current| item.point(current))
-            .collect();
+        let mut item = Item { characteristic, scale, grid: Vec::new(), free: None };
+        let even = (0..=GRID).map(|k| match k {
+            0 => low,
+            GRID => high,
+            k => low * (high / low).powf(k as f64 / GRID as f64),
+        });
+        // Rows of the tables are where a curve bends most.
+        let mut currents: Vec<f64> = even.chain(item.characteristic.rows_inside()).collect();
+        currents.sort_by(f64::total_cmp);
+        currents.dedup();
+        item.grid = currents.into_iter().map(|current| item.point(current)).collect();
+        item.free = Some(item.best(0.0));
         Some(item)
     }
 
@@ -101,7 +109,7 @@ impl Item {
     pub(crate) fn best(&self, price: f64) -> Point {
         let index = self.best_index(price);
         let low = self.grid[index.saturating_sub(1)].current.ln();
-        let high = self.grid[(index + 1).min(GRID)].current.ln();
+        let high = self.grid[(index + 1).min(self.grid.len() - 1)].current.ln();
         if high <= low {
             return self.grid[index];
         }
@@ -153,7 +161,7 @@ impl Item {
             offer(self.point(current));
         }
         self.grid.iter().for_each(|point| offer(*point));
-        offer(self.best(0.0));
+        self.free.into_iter().for_each(offer);
         best
     }
 }
@@ -197,7 +205,6 @@ pub(crate) fn least_power(items: &[&Item], demand: &[f64], budget: f64) -> Resul
     if !fits(&dear) {
         dear = tightest(items);
     }
-    let mut cheap = if low > 0.0 { at_price(low) } else { free };
     for _ in 0..60 {
         let middle = if low > 0.0 { (low * high).sqrt() } else { high / 16.0 };
         if high <= low * (1.0 + 1e-13) || middle < 1e-300 {
@@ -210,7 +217,7 @@ pub(crate) fn least_power(items: &[&Item], demand: &[f64], budget: f64) -> Resul
                 break;
             }
         } else {
-            (low, cheap) = (middle, points);
+            low = middle;
         }
     }
     // The price bound: no choice of currents costs less.
@@ -223,15 +230,14 @@ pub(crate) fn least_power(items: &[&Item], demand: &[f64], budget: f64) -> Resul
         - high * budget;
     let mut best = fill_up(items, demand, budget, dear);
     if cost(&best) > bound * (1.0 + 1e-7) {
-        // A jump between two branches: try each jumping item on the cheap branch, then exchange.
-        for index in 0..items.len() {
-            let mut trial = best.clone();
-            trial[index] = cheap[index];
-            if fits(&trial) && cost(&trial) < cost(&best) {
-                best = trial;
+        // A curve that is not convex: merge all grids at once, then refine by exchanges from both starts.
+        best = exchange(items, demand, budget, best);
+        if let Some(merged) = merge(items, demand, budget) {
+            let merged = exchange(items, demand, budget, fill_up(items, demand, budget, merged));
+            if cost(&merged) < cost(&best) {
+                best = merged;
             }
         }
-        best = exchange(items, demand, budget, best);
     }
     Ok(best)
 }
@@ -258,6 +264,56 @@ fn fill_up(items: &[&Item], demand: &[f64], budget: f64, mut points: Vec<Point>)
         }
     }
     points
+}
+
+/// A partial choice in [`merge`]: its totals, the grid point of the last item, the partial choice before it.
+#[derive(Debug, Clone, Copy)]
+struct Partial {
+    area: f64,
+    cost: f64,
+    point: usize,
+    before: usize,
+}
+
+/// The best combination of grid points, item by item, keeping the cheapest partial choice in each narrow bin of
+/// area.
+fn merge(items: &[&Item], demand: &[f64], budget: f64) -> Option<Vec<Point>> {
+    let mut layers: Vec<Vec<Partial>> = vec![vec![Partial { area: 0.0, cost: 0.0, point: 0, before: 0 }]];
+    for (item, d) in items.iter().zip(demand) {
+        // Only points that no other point beats in both area and cost.
+        let mut order: Vec<usize> = (0..item.grid.len()).collect();
+        order.sort_by(|&a, &b| item.grid[a].area.total_cmp(&item.grid[b].area));
+        let mut cheapest = f64::INFINITY;
+        order.retain(|&k| {
+            let better = item.grid[k].cost < cheapest;
+            cheapest = cheapest.min(item.grid[k].cost);
+            better
+        });
+        let mut bins: Vec<Option<Partial>> = vec![None; MERGE_BINS + 1];
+        for (before, partial) in layers[layers.len() - 1].iter().enumerate() {
+            for &point in &order {
+                let area = partial.area + d * item.grid[point].area;
+                if area > budget {
+                    break;
+                }
+                let cost = partial.cost + d * item.grid[point].cost;
+                let bin = &mut bins[(area / budget * MERGE_BINS as f64) as usize];
+                if bin.is_none_or(|kept| cost < kept.cost) {
+                    *bin = Some(Partial { area, cost, point, before });
+                }
+            }
+        }
+        layers.push(bins.into_iter().flatten().collect());
+    }
+    let last = layers.last()?;
+    let mut at = (0..last.len()).min_by(|&a, &b| last[a].cost.total_cmp(&last[b].cost))?;
+    let mut points = Vec::with_capacity(items.len());
+    for (item, layer) in items.iter().zip(layers.iter().skip(1)).rev() {
+        points.push(item.grid[layer[at].point]);
+        at = layer[at].before;
+    }
+    points.reverse();
+    Some(points)
 }
 
 /// Exchanges area between pairs of items until nothing is gained.
@@ -289,7 +345,7 @@ fn exchange(items: &[&Item], demand: &[f64], budget: f64, mut points: Vec<Point>
                 }
                 if let Some(k) = at {
                     let low = items[i].grid[k.saturating_sub(1)].current.ln();
-                    let high = items[i].grid[(k + 1).min(GRID)].current.ln();
+                    let high = items[i].grid[(k + 1).min(items[i].grid.len() - 1)].current.ln();
                     let value = |log: f64| pair(items[i].point(log.exp())).map_or(f64::INFINITY, |f| f.2);
                     let log = scan_minimum(value, low, high, 8);
                     if let Some(found) = pair(items[i].point(log.exp())).filter(|found| found.2 < best.2) {

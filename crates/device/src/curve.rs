@@ -90,6 +90,11 @@ impl Curve {
         (self.at[0], self.at[self.at.len() - 1])
     }
 
+    /// Currents of the rows, ascending.
+    pub(crate) fn rows(&self) -> impl Iterator<Item = f64> + '_ {
+        self.at.iter().copied()
+    }
+
     /// The value at a current, with a notice just past the table and an error further out.
     ///
     /// Past an end the curve goes on along its end slope in log J, at most by [`TABLE_REACH`].

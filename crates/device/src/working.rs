@@ -406,6 +406,13 @@ impl Characteristic {
         }
     }
 
+    /// Currents of the tables' rows strictly inside the range.
+    pub(crate) fn rows_inside(&self) -> Vec<f64> {
+        let (low, high) = self.range;
+        let curves = [self.eqe_curve(), self.voltage_curve()].into_iter().flatten();
+        curves.flat_map(Curve::rows).filter(|at| *at > low && *at < high).collect()
+    }
+
     /// Photon current `J·EQE(J)`, mA/cm²: electrons that leave as photons.
     pub fn photon_current(&self, current_ma_per_cm2: f64) -> f64 {
         current_ma_per_cm2 * self.eqe(current_ma_per_cm2)

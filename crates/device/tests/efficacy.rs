@@ -3,12 +3,14 @@
 
 mod support;
 
+use device::curve::Table;
 use device::efficacy::{BlendSolver, Effort, Question, Reply, best_efficacy};
 use device::power::PowerModel;
 use device::series_stack::SeriesStack;
 use device::shared_zone::SharedZone;
+use device::sheet::{EqeModel, VoltageModel};
 use device::side_by_side::{Drive, Freedom, SideBySide};
-use device::{Build, DeviceEmitter, FormSettings};
+use device::{Build, DeviceEmitter, FormSettings, Sheet};
 use nalgebra::{DMatrix, DVector};
 use support::{Dice, emitter, gaussian_light, random_sheet};
 
@@ -88,17 +90,22 @@ fn set(dice: &mut Dice) -> (Vec<DeviceEmitter>, Vertices) {
             emitter(&format!("Invented {peak}"), light, random_sheet(dice))
         })
         .collect();
-    // Y of one radiant watt in lumens, so that one lumen is Y = 1. The white: x 0.38, y 0.377 (near 4000 K).
-    let xyz: Vec<[f64; 3]> = emitters
-        .iter()
-        .map(|e| {
-            let scale = e.light.ler_lm_per_w / e.light.xyz_per_w[1];
-            e.light.xyz_per_w.map(|part| part * scale)
-        })
-        .collect();
-    let ler = emitters.iter().map(|e| e.light.ler_lm_per_w).collect();
+    let solver = vertices(&emitters);
+    (emitters, solver)
+}
+
+/// The solver of a set at the white x 0.38, y 0.377 (near 4000 K), scaled so that one lumen is Y = 1.
+fn vertices(emitters: &[DeviceEmitter]) -> Vertices {
+    let in_lumens = |e: &DeviceEmitter| {
+        let scale = e.light.ler_lm_per_w / e.light.xyz_per_w[1];
+        e.light.xyz_per_w.map(|part| part * scale)
+    };
     let (x, y) = (0.38, 0.377);
-    (emitters, Vertices { xyz, ler, white: [x / y, 1.0, (1.0 - x - y) / y] })
+    Vertices {
+        xyz: emitters.iter().map(in_lumens).collect(),
+        ler: emitters.iter().map(|e| e.light.ler_lm_per_w).collect(),
+        white: [x / y, 1.0, (1.0 - x - y) / y],
+    }
 }
 
 /// Brute force over the one free direction of four emitters at one white.
@@ -151,6 +158,40 @@ fn stripes(drive: Drive) -> Build {
 #[test]
 fn own_currents_with_the_blend_free() {
     never_worse(&stripes(Drive::OwnCurrent(Freedom::LeastPower)), 1, (500.0, 6000.0));
+}
+
+#[test]
+fn own_currents_where_area_is_short_and_the_best_blend_lies_between_two() {
+    never_worse(&stripes(Drive::OwnCurrent(Freedom::LeastPower)), 20, (8000.0, 40_000.0));
+}
+
+#[test]
+fn an_efficient_emitter_short_of_current_is_used_as_far_as_it_goes() {
+    // Two greens: one efficient that may only run low, one poor that may run high. Neither alone is best.
+    let sheet = |eqe: f64, highest: f64| Sheet {
+        eqe: Some(EqeModel::Table(Table::new(vec![(0.05, eqe), (highest, eqe)]))),
+        voltage: Some(VoltageModel::Table(Table::new(vec![(0.05, 2.9), (highest, 3.1)]))),
+        ..Sheet::default()
+    };
+    let emitters = [
+        emitter("blue", gaussian_light(455.0, 25.0), sheet(0.15, 50.0)),
+        emitter("green, efficient", gaussian_light(540.0, 40.0), sheet(0.25, 0.6)),
+        emitter("green, strong", gaussian_light(545.0, 40.0), sheet(0.06, 50.0)),
+        emitter("red", gaussian_light(615.0, 40.0), sheet(0.2, 50.0)),
+    ];
+    let mut solver = vertices(&emitters);
+    let build = stripes(Drive::OwnCurrent(Freedom::LeastPower));
+    let model = build.power_model(&emitters).unwrap();
+    let ler = solver.ler.clone();
+    let mut between = 0;
+    for lumens in [1500.0, 2500.0, 3500.0, 5000.0] {
+        let found = best_efficacy(&model, &ler, lumens, &mut solver, Effort::default()).unwrap();
+        let brute = brute(&model, &solver, lumens).unwrap();
+        assert!(found.least.watts <= brute * 1.001, "{} W, brute force {brute} W", found.least.watts);
+        assert!(found.bound_lm_per_w.unwrap() <= found.efficacy_lm_per_w * 1.003);
+        between += u32::from(found.shares[1] > 0.02 && found.shares[2] > 0.02);
+    }
+    assert!(between >= 2, "both greens are lit in {between} of 4 answers");
 }
 
 #[test]
