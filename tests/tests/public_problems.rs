@@ -5,8 +5,8 @@
 use colour::tensor::{Tensor, TensorSet};
 use colour::{Observer, Reference, locus::cct_duv, measure::measure_at};
 use optimiser::{
-    Control, Grade, Levels, Limits, Metric, Objective, Outcome, Problem, Region, Solution, Target, choose, frontier,
-    packages, solve, table,
+    Control, Grade, Levels, Limits, Metric, Objective, Outcome, Problem, Region, Solution, Target, choose,
+    frontier, packages, solve, table,
 };
 use serde_json::Value;
 
@@ -72,7 +72,12 @@ struct Case {
 
 fn case(id: &str) -> Case {
     let find = |list: &Value| {
-        list.as_array().expect("a list").iter().find(|x| x["id"] == id).cloned().expect("the problem is in the list")
+        list.as_array()
+            .expect("a list")
+            .iter()
+            .find(|x| x["id"] == id)
+            .cloned()
+            .expect("the problem is in the list")
     };
     let of = find(&json("problems.json")["problems"]);
     let best = find(&json("best_known.json")["solutions"]);
@@ -274,9 +279,9 @@ fn p11_best_four_of_twelve() {
 fn p12_whole_packages() {
     let c = case("P12");
     let of = &c.of["counts"];
-    let watts: Vec<f64> =
-        of["power_per_package_W"].as_array().expect("powers").iter().map(number).collect();
-    let answer = packages(&c.problem, &watts, number(&of["max_total"]) as u32, 2, &Control::none()).expect("valid");
+    let watts: Vec<f64> = of["power_per_package_W"].as_array().expect("powers").iter().map(number).collect();
+    let answer =
+        packages(&c.problem, &watts, number(&of["max_total"]) as u32, 2, &Control::none()).expect("valid");
     let best = &answer.ranked[0];
     let known: Vec<u32> =
         c.best["counts"].as_array().expect("counts").iter().map(|x| number(x) as u32).collect();
@@ -290,7 +295,8 @@ fn p12_whole_packages() {
 fn p13_a_frontier_of_ra() {
     let c = case("P13");
     let levels: Vec<f64> = c.of["levels"]["values"].as_array().expect("levels").iter().map(number).collect();
-    let points = frontier(&c.problem, Metric::Ra, &Levels::At(levels.clone()), &Control::none()).expect("valid");
+    let points =
+        frontier(&c.problem, Metric::Ra, &Levels::At(levels.clone()), &Control::none()).expect("valid");
     assert_eq!(points.len(), levels.len());
     let known = c.best["points"].as_array().expect("points");
     let mut last = f64::INFINITY;

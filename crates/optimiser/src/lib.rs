@@ -21,10 +21,14 @@ mod missing;
 mod models;
 mod packages;
 mod problem;
+#[cfg(test)]
+mod properties;
 mod quadratic;
 mod region;
 mod simplex;
 mod solve;
+#[cfg(test)]
+mod soundness;
 mod space;
 mod table;
 mod tcs;
