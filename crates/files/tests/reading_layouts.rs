@@ -46,6 +46,37 @@ fn separators_and_decimal_marks() {
 }
 
 #[test]
+fn commas_that_separate_and_mark_decimals() {
+    let half: String = (0..801)
+        .map(|row| {
+            let nm = 380.0 + 0.5 * f64::from(row);
+            format!("{nm:.1},{:.4}\n", fern(nm)).replace('.', ",")
+        })
+        .collect();
+    let whole = rows(",").replace('.', ",");
+    for (text, points) in [(half, 801), (whole, 401)] {
+        // The header tells the number of columns.
+        let reading = read(&format!("Wavelength (nm),Signal\n{text}"));
+        outcome(&reading, Outcome::Read);
+        assert!(reading.assumptions[0].contains("Commas separate"));
+        is_fern(&reading.spectra[0]);
+        assert_eq!(reading.spectra[0].points, Some(points));
+        // Without one it is asked.
+        let reading = read(&text);
+        outcome(&reading, Outcome::Ask);
+        assert_eq!((reading.questions[0].option, reading.spectra[0].peak_nm), ("--decimal", None));
+        let reading = answered(&text, &Answers { decimal: Some(Decimal::Comma), ..Answers::default() });
+        outcome(&reading, Outcome::Read);
+        is_fern(&reading.spectra[0]);
+    }
+    // Whole numbers are whole numbers.
+    let counts: String =
+        grid().iter().map(|nm| format!("{nm},{},{}\n", (900.0 * fern(*nm)) as u32, 7)).collect();
+    let reading = read(&format!("nm,Fern,Other\n{counts}"));
+    assert_eq!((reading.spectra.len(), reading.spectra[0].peak_nm), (2, Some(530.0)));
+}
+
+#[test]
 fn numbers_as_instruments_write_them() {
     let exponent = |mark: &str, letter: &str| -> String {
         grid()

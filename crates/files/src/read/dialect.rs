@@ -82,29 +82,24 @@ pub(super) fn choose(text: &str, answers: &Answers) -> Result<Dialect, OpenQuote
     if separator == Separator::Comma
         && let Some(pairs) = comma_pairs(lines, width, answers)
     {
-        match pairs {
-            Pairs::OneColumn => {
-                dialect.separator = Separator::Tab;
-                dialect.width = 1;
-            }
-            Pairs::Certain(line) => {
-                dialect.separator = Separator::CommaPairs;
-                dialect.decimal = Decimal::Comma;
-                dialect.width = width / 2;
-                dialect.assumptions.push(format!(
-                    "Commas separate the columns and mark the decimals too: line {line} has {} numbers of two cells each, as the header names.",
-                    width / 2
-                ));
-                return Ok(dialect);
-            }
-            Pairs::Open(line) => {
-                dialect.separator = Separator::CommaPairs;
-                dialect.decimal = Decimal::Comma;
-                dialect.width = width / 2;
-                dialect.doubt = Some(Doubt::Pairs(line));
-                return Ok(dialect);
-            }
+        let Some(line) = pairs.line else {
+            dialect.separator = Separator::Tab;
+            dialect.width = 1;
+            decide_decimal(text, &mut dialect, answers)?;
+            return Ok(dialect);
+        };
+        dialect.separator = Separator::CommaPairs { whole_axis: pairs.whole_axis };
+        dialect.decimal = Decimal::Comma;
+        dialect.width = width / 2 + usize::from(pairs.whole_axis);
+        if pairs.certain {
+            dialect.assumptions.push(format!(
+                "Commas separate the columns and mark the decimals too: the header names {} columns, line {line} has {width} cells.",
+                dialect.width
+            ));
+        } else {
+            dialect.doubt = Some(Doubt::Pairs(line));
         }
+        return Ok(dialect);
     }
     decide_decimal(text, &mut dialect, answers)?;
     Ok(dialect)
@@ -184,20 +179,22 @@ fn score(lines: &[(usize, &str)], separator: Separator) -> Score {
     score
 }
 
-enum Pairs {
-    /// One column of numbers with decimal commas.
-    OneColumn,
-    /// Certain by the header; line of the first row.
-    Certain(usize),
-    /// Not decided by anything in the file.
-    Open(usize),
+/// Commas that separate and mark decimals.
+struct Pairs {
+    /// The line of the first row; none when all is one column of numbers.
+    line: Option<usize>,
+    /// The axis is written in whole numbers, without a comma of its own.
+    whole_axis: bool,
+    /// The header or an answer leaves no other reading.
+    certain: bool,
 }
 
-/// Whether commas in `380,0,0,123` are both separators and decimal marks.
+/// Whether commas in `380,0,0,123` or `380,0,123` are both separators and decimal marks.
 fn comma_pairs(lines: &[(usize, &str)], width: usize, answers: &Answers) -> Option<Pairs> {
-    if answers.decimal == Some(Decimal::Point) || !width.is_multiple_of(2) {
+    if answers.decimal == Some(Decimal::Point) || width < 2 {
         return None;
     }
+    let whole_axis = !width.is_multiple_of(2);
     let digits = |cell: &str| !cell.is_empty() && cell.bytes().all(|byte| byte.is_ascii_digit());
     let (mut rows, mut fitting, mut leading_zero, mut first) = (0, 0, 0, None);
     let mut firsts = Vec::new();
@@ -212,37 +209,37 @@ fn comma_pairs(lines: &[(usize, &str)], width: usize, answers: &Answers) -> Opti
         rows += 1;
         first = first.or(Some(*number));
         firsts.push(list[0].to_owned());
-        let fits = list.chunks(2).all(|pair| {
+        let pairs = &list[usize::from(whole_axis)..];
+        let fits = pairs.chunks(2).all(|pair| {
             let fraction = pair[1].split(['e', 'E']).next().unwrap_or("");
             digits(pair[0].trim_start_matches(['-', '+'])) && digits(fraction)
         });
-        fitting += usize::from(fits);
-        leading_zero += usize::from(list.chunks(2).any(|pair| pair[1].len() > 1 && pair[1].starts_with('0')));
+        fitting += usize::from(fits && (!whole_axis || digits(list[0])));
+        // Whole numbers are not written with a zero in front: 05 is a fraction.
+        leading_zero +=
+            usize::from(pairs.chunks(2).any(|pair| pair[1].len() > 1 && pair[1].starts_with('0')));
     }
     let first = first?;
-    if rows < 5 || fitting < rows {
+    if rows < 5 || fitting * 20 < rows * 19 {
         return None;
     }
     firsts.dedup();
     let repeated = firsts.len() * 2 < rows;
+    let answered = answers.decimal == Some(Decimal::Comma);
     if width == 2 {
-        return (repeated || answers.decimal == Some(Decimal::Comma)).then_some(Pairs::OneColumn);
+        return (repeated || answered).then_some(Pairs { line: None, whole_axis: false, certain: true });
     }
     let header = lines
         .iter()
         .rev()
         .find(|(number, line)| *number < first && !line.trim().is_empty())
-        .map(|(_, line)| cell_list(line, Separator::Comma));
-    if answers.decimal == Some(Decimal::Comma)
-        || header.as_ref().is_some_and(|cells| cells.len() == width / 2 && !cells.is_empty())
-            && (leading_zero > 0 || repeated || width > 2)
-    {
-        return Some(Pairs::Certain(first));
-    }
-    if header.is_some_and(|cells| cells.len() == width) {
+        .map(|(_, line)| cell_list(line, Separator::Comma).len());
+    if header == Some(width) {
         return None;
     }
-    (leading_zero > 0 || repeated).then_some(Pairs::Open(first))
+    let certain = answered || header == Some(width / 2 + usize::from(whole_axis));
+    let doubtful = leading_zero > 0 || repeated && !whole_axis;
+    (certain || doubtful).then_some(Pairs { line: Some(first), whole_axis, certain })
 }
 
 #[derive(Debug, Clone, Copy, Default)]

@@ -213,7 +213,8 @@ fn fitting_cells(line: &str, separator: Separator, width: usize, indexed: bool) 
     if line.len() > 1_000_000 {
         return None;
     }
-    let separator = if separator == Separator::CommaPairs { Separator::Comma } else { separator };
+    let separator =
+        if matches!(separator, Separator::CommaPairs { .. }) { Separator::Comma } else { separator };
     let mut cells = if width == 1 {
         vec![without_comment_mark(line).trim_matches('"').to_owned()]
     } else {

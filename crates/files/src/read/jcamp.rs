@@ -168,7 +168,7 @@ fn pairs_of(
     let mut failed_checks = 0;
     for line in &data.lines {
         if axis.len() + values.len() > MAX_NUMBERS {
-            return Err((Some(data.line), "expected at most 8 million numbers, found more".into()));
+            return Err((Some(data.line), "expected at most 5 million numbers, found more".into()));
         }
         if data.pairs {
             let words: Vec<&str> =

@@ -9,8 +9,11 @@ pub(super) enum Separator {
     Comma,
     /// A comma followed by a blank; commas without one belong to the numbers.
     CommaBlank,
-    /// A comma that both separates and marks decimals: every two cells make one number.
-    CommaPairs,
+    /// A comma that both separates and marks decimals: every two cells make one number, but for a whole-numbered axis.
+    CommaPairs {
+        /// The first cell is a number of its own.
+        whole_axis: bool,
+    },
     /// Runs of blanks and tabs.
     Blanks,
 }
@@ -27,7 +30,7 @@ impl Separator {
             Self::Bar => "vertical bar",
             Self::Comma => "comma",
             Self::CommaBlank => "comma and blank",
-            Self::CommaPairs => "comma, which is the decimal mark too",
+            Self::CommaPairs { .. } => "comma, which is the decimal mark too",
             Self::Blanks => "blanks",
         }
     }

@@ -6,7 +6,7 @@ use super::number::{Cell, cell, is_missing};
 use super::split::{Lines, OpenQuote, Separator, cell_list, cells, is_comment};
 
 /// More numbers than this are refused: no spectrum needs them, and memory is kept in bounds.
-pub(super) const MAX_NUMBERS: usize = 8_000_000;
+pub(super) const MAX_NUMBERS: usize = 5_000_000;
 /// Lines of text kept; more are only counted.
 const MAX_TEXTS: usize = 100_000;
 /// Cells looked at in one line.
@@ -291,10 +291,12 @@ fn count(row: &[Cell]) -> (usize, usize) {
 
 /// Appends the cells of `line`.
 pub(super) fn read_row(line: &str, dialect: &Dialect, separator: Separator, into: &mut Vec<Cell>) {
-    if separator == Separator::CommaPairs {
+    if let Separator::CommaPairs { whole_axis } = separator {
         let list = cell_list(line, Separator::Comma);
-        if list.len().is_multiple_of(2) {
-            into.extend(list.chunks(2).map(|pair| {
+        let (alone, paired) = list.split_at(usize::from(whole_axis).min(list.len()));
+        into.extend(alone.iter().map(|token| cell(token, Decimal::Comma, false)));
+        if paired.len().is_multiple_of(2) {
+            into.extend(paired.chunks(2).map(|pair| {
                 let joined = format!("{},{}", pair[0], pair[1]);
                 if pair.iter().all(|part| part.is_empty()) {
                     Cell::Missing
@@ -303,7 +305,7 @@ pub(super) fn read_row(line: &str, dialect: &Dialect, separator: Separator, into
                 }
             }));
         } else {
-            into.extend(list.iter().map(|token| cell(token, Decimal::Comma, false)));
+            into.extend(paired.iter().map(|token| cell(token, Decimal::Comma, false)));
         }
         return;
     }

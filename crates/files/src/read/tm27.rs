@@ -171,7 +171,7 @@ fn walk(text: &str, description: &mut String) -> Result<Vec<Found>, Refusal> {
                     ("SpectralData", Some(block)) => {
                         numbers += 2;
                         if numbers > MAX_NUMBERS {
-                            return Err((None, "expected at most 8 million numbers, found more".into()));
+                            return Err((None, "expected at most 5 million numbers, found more".into()));
                         }
                         block.values.push(cell(value, Decimal::Point, false));
                     }

@@ -83,8 +83,11 @@ pub(super) fn find(text: &str, dialect: &Dialect) -> Option<Turned> {
 
 /// The label and the cells of a line that holds mostly numbers after at most two cells of words.
 fn wide_row(line: &str, dialect: &Dialect) -> Option<(String, Vec<Cell>)> {
-    let separator =
-        if dialect.separator == Separator::CommaPairs { Separator::Comma } else { dialect.separator };
+    let separator = if matches!(dialect.separator, Separator::CommaPairs { .. }) {
+        Separator::Comma
+    } else {
+        dialect.separator
+    };
     let mut cells = Vec::new();
     read_row(line, dialect, separator, &mut cells);
     let words = cells.iter().take(4).take_while(|cell| !matches!(cell, Cell::Number(_))).count();
