@@ -43,7 +43,11 @@ impl Axis {
 }
 
 fn widened(low: f64, high: f64) -> (f64, f64) {
-    if low.is_finite() && high.is_finite() && high - low > 1e-12 * low.abs().max(high.abs()) {
+    // Beyond this the differences of an axis lose their meaning.
+    const MOST: f64 = 1e100;
+    if low.abs() > MOST || high.abs() > MOST {
+        (0.0, 1.0)
+    } else if low.is_finite() && high.is_finite() && high - low > 1e-12 * low.abs().max(high.abs()) {
         (low, high)
     } else if low.is_finite() {
         (low - 0.5, low + 0.5)

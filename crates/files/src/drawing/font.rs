@@ -59,11 +59,22 @@ pub(crate) fn set(words: &str, bold: bool) -> Vec<Set> {
     words
         .char_indices()
         .map(|(start, c)| {
-            let glyph = map.map(c).unwrap_or(GlyphId::NOTDEF);
+            let glyph = map.map(c).or_else(|| map.map(stand_in(c)?)).unwrap_or(GlyphId::NOTDEF);
             let advance = f64::from(widths.advance_width(glyph).unwrap_or(0.0)) / face.units_per_em;
             Set { glyph: glyph.to_u32(), start, bytes: c.len_utf8(), advance_em: advance }
         })
         .collect()
+}
+
+/// A character the font has, shown for one it lacks: lowered figures stand on the line. What the text says when it
+/// is copied stays as it was.
+fn stand_in(c: char) -> Option<char> {
+    match c {
+        '₀'..='₉' => char::from_digit(u32::from(c) - u32::from('₀'), 10),
+        '\u{2011}' => Some('-'),
+        '\u{2007}' | '\u{202f}' => Some(' '),
+        _ => None,
+    }
 }
 
 /// Width of a text in pt at a size in pt.
@@ -149,6 +160,11 @@ mod tests {
         {
             assert!(has(c), "{c} is missing");
         }
+    }
+
+    #[test]
+    fn lowered_figures_are_shown_as_figures() {
+        assert_eq!(set("c₂", false)[1].glyph, set("c2", false)[1].glyph);
     }
 
     #[test]

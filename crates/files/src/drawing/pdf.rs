@@ -159,7 +159,7 @@ fn rectangle(frame: Frame) -> Option<krilla::geom::Path> {
 
 fn words(text: &Text, fonts: &Fonts, surface: &mut Surface<'_>) {
     let said = printable(&text.words);
-    if said.trim().is_empty() || !(text.place.x.is_finite() && text.place.y.is_finite()) {
+    if said.trim().is_empty() || !text.place.is_paintable() {
         return;
     }
     let glyphs: Vec<KrillaGlyph> = font::set(&said, text.bold)

@@ -170,7 +170,7 @@ impl OutlinePen for GlyphPen {
 }
 
 fn words(text: &Text, scale: Transform, seen: Option<&Mask>, pixels: &mut Pixmap) {
-    if !(text.place.x.is_finite() && text.place.y.is_finite() && text.size_pt.is_finite()) {
+    if !(text.place.is_paintable() && text.size_pt.is_finite()) {
         return;
     }
     let glyphs = font::set(&printable(&text.words), text.bold);

@@ -143,7 +143,7 @@ fn path_data(path: &Path) -> String {
 }
 
 fn words(text: &Text, out: &mut String) {
-    if !(text.place.x.is_finite() && text.place.y.is_finite() && text.size_pt.is_finite()) {
+    if !(text.place.is_paintable() && text.size_pt.is_finite()) {
         return;
     }
     let (x, y) = (mm(text.place.x), mm(text.place.y));

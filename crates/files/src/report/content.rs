@@ -1,7 +1,7 @@
 //! The model as a list of blocks that every back end prints in the same order.
 
 use super::model::{LedgerLine, MeasuredValue, RecipeSheet, ReportModel};
-use super::number::{fixed, percent, significant};
+use super::number::{self, fixed, percent, significant};
 use crate::drawing::Drawing;
 
 /// What stands in every report about the effect of light on eyes and skin.
@@ -19,6 +19,8 @@ pub(crate) const HALF_MM: f64 = 84.0;
 pub(crate) enum Block {
     Heading(String),
     Paragraph(String),
+    /// A paragraph that stays with what follows.
+    Lead(String),
     Table(Table),
     /// One figure, or two side by side.
     Figures(Vec<Figure>),
@@ -62,6 +64,20 @@ fn row(cells: impl IntoIterator<Item = String>) -> Row {
     Row { cells: cells.into_iter().collect(), strong: false }
 }
 
+impl Table {
+    /// Without its last column when that says nothing in any row.
+    fn without_silent_end(mut self) -> Table {
+        let silent = |row: &Row| row.cells.last().is_none_or(String::is_empty);
+        if self.rows.iter().all(silent) {
+            self.columns.pop();
+            for row in &mut self.rows {
+                row.cells.pop();
+            }
+        }
+        self
+    }
+}
+
 /// The facts under the title: name and value.
 pub(crate) fn facts(model: &ReportModel) -> Vec<(&'static str, String)> {
     [
@@ -97,17 +113,18 @@ fn heading(words: &str) -> Block {
 fn white(model: &ReportModel, out: &mut Vec<Block>) {
     if !model.ledger.is_empty() {
         out.push(heading("The white against its spec"));
-        out.push(Block::Table(Table {
+        let table = Table {
             columns: vec![
                 left("requirement", 1.5),
                 right("value", 1.1),
                 right("asked for", 1.6),
                 right("margin", 1.5),
-                left("", 0.8),
-                left("remark", 3.2),
+                left("", 1.0),
+                left("remark", 3.0),
             ],
             rows: model.ledger.iter().map(ledger_row).collect(),
-        }));
+        };
+        out.push(Block::Table(table.without_silent_end()));
     }
     if !model.proof.is_empty() {
         out.push(Block::Paragraph(model.proof.clone()));
@@ -118,7 +135,7 @@ fn white(model: &ReportModel, out: &mut Vec<Block>) {
     }
     if !model.shares.is_empty() {
         out.push(heading("Shares, by kind"));
-        out.push(Block::Paragraph(
+        out.push(Block::Lead(
             "The same blend, counted three ways. A share of one kind must never be set as a share of another.".to_owned(),
         ));
         let kind = |share: Option<f64>| share.map_or_else(|| "unknown".to_owned(), percent);
@@ -194,14 +211,14 @@ fn recipe_blocks(recipe: &RecipeSheet, out: &mut Vec<Block>) {
     };
     out.push(Block::Heading(name));
     if !recipe.summary.is_empty() {
-        out.push(Block::Paragraph(recipe.summary.clone()));
+        out.push(Block::Lead(recipe.summary.clone()));
     }
     if let Some(picture) = &recipe.picture {
         out.push(Block::Figures(vec![Figure { drawing: picture.draw(WIDE_MM), caption: String::new() }]));
     }
     if !recipe.rows.is_empty() {
         let end = |value: Option<f64>| value.map(|v| significant(v, 5));
-        out.push(Block::Table(Table {
+        let table = Table {
             columns: vec![
                 left("part", 1.8),
                 left("quantity", 1.7),
@@ -215,7 +232,7 @@ fn recipe_blocks(recipe: &RecipeSheet, out: &mut Vec<Block>) {
                 .rows
                 .iter()
                 .map(|r| {
-                    let band = match (end(r.allowed_low), end(r.allowed_high)) {
+                    let band = match number::band(r.allowed_low, r.allowed_high, 4) {
                         (Some(low), Some(high)) => format!("{low} to {high}"),
                         (Some(low), None) => format!("at least {low}"),
                         (None, Some(high)) => format!("at most {high}"),
@@ -236,10 +253,11 @@ fn recipe_blocks(recipe: &RecipeSheet, out: &mut Vec<Block>) {
                     ])
                 })
                 .collect(),
-        }));
+        };
+        out.push(Block::Table(table.without_silent_end()));
     }
     if !recipe.predicted.is_empty() {
-        out.push(Block::Paragraph("Predicted of the device built to this recipe:".to_owned()));
+        out.push(Block::Lead("Predicted of the device built to this recipe:".to_owned()));
         out.push(Block::Table(values(&recipe.predicted)));
     }
 }
@@ -315,14 +333,15 @@ fn rest(model: &ReportModel, out: &mut Vec<Block>) {
     }
     if !model.sources.is_empty() {
         out.push(heading("Source files"));
-        out.push(Block::Table(Table {
+        let table = Table {
             columns: vec![left("emitter", 1.4), left("file", 1.6), left("SHA-256", 2.6), left("remark", 1.8)],
             rows: model
                 .sources
                 .iter()
                 .map(|s| row([s.emitter.clone(), s.file.clone(), s.sha256.clone(), s.remark.clone()]))
                 .collect(),
-        }));
+        };
+        out.push(Block::Table(table.without_silent_end()));
     }
     if !model.methods.is_empty() {
         out.push(heading("Methods and sources"));

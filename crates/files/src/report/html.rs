@@ -79,7 +79,7 @@ fn print(block: &Block, figures: &mut usize, out: &mut String) {
         Block::Heading(words) => {
             put!(out, "<h2>{}</h2>\n", escaped(words));
         }
-        Block::Paragraph(words) => {
+        Block::Paragraph(words) | Block::Lead(words) => {
             put!(out, "<p>{}</p>\n", escaped(words));
         }
         Block::Table(table) => self::table(table, out),

@@ -1,6 +1,6 @@
 //! The report's blocks set on A4 pages.
 
-use super::content::{self, Block, Figure, HALF_MM, Table, WIDE_MM};
+use super::content::{self, Block, Figure, HALF_MM, Row, Table, WIDE_MM};
 use super::model::ReportModel;
 use crate::drawing::{Anchor, Frame, MM_PER_PT, Mark, Path, Pen, Text, at, font, theme};
 
@@ -17,6 +17,9 @@ const BODY_LINE: f64 = 4.7;
 const TABLE_LINE: f64 = 4.0;
 const ROW_PAD: f64 = 0.9;
 const CELL_GAP: f64 = 2.4;
+const CAPTION_LINE: f64 = 3.8;
+/// Distance of the caution's words from its frame.
+const INSET: f64 = 6.0;
 
 /// What is painted on a page: marks, moved right and down by mm.
 pub(crate) struct Placed {
@@ -42,11 +45,86 @@ pub(crate) struct Pages {
 pub(crate) fn pages(model: &ReportModel) -> Pages {
     let mut sheet = Sheet { pages: vec![Vec::new()], landmarks: Vec::new(), y: TOP };
     sheet.title(model);
-    for block in content::blocks(model) {
-        sheet.block(&block);
+    let blocks = content::blocks(model);
+    for (index, block) in blocks.iter().enumerate() {
+        sheet.need(keep(&blocks[index..]));
+        sheet.block(block);
     }
     sheet.run_heads(model);
     Pages { pages: sheet.pages, landmarks: sheet.landmarks }
+}
+
+/// Height that the first of these blocks wants to stay together with, mm: a heading with what it heads, a short table
+/// whole, the beginning of a long one.
+fn keep(blocks: &[Block]) -> f64 {
+    /// Tables up to this height are kept whole.
+    const SHORT_TABLE: f64 = 70.0;
+    let Some((first, rest)) = blocks.split_first() else { return 0.0 };
+    let lines = |words: &str, width: f64| font::wrap(words, BODY_PT, false, width / MM_PER_PT).len() as f64;
+    match first {
+        Block::Heading(_) => 12.5 + keep(rest),
+        Block::Lead(words) => lines(words, WIDE_MM) * BODY_LINE + 1.0 + keep(rest),
+        Block::Paragraph(_) => 2.0 * BODY_LINE,
+        Block::Table(table) => {
+            let spans = spans(table);
+            let head = TABLE_LINE + 1.6;
+            let rows: Vec<f64> = table
+                .rows
+                .iter()
+                .map(|row| {
+                    let lines = wrapped(row, &spans).iter().map(Vec::len).max().unwrap_or(1).max(1);
+                    lines as f64 * TABLE_LINE + 2.0 * ROW_PAD
+                })
+                .collect();
+            let whole = head + rows.iter().sum::<f64>();
+            if whole <= SHORT_TABLE { whole } else { head + rows.iter().take(3).sum::<f64>().min(40.0) }
+        }
+        Block::Figures(list) => figures_height(list).0,
+        Block::Caution(words) => (lines(words, WIDE_MM - INSET - 5.0) + 1.0) * BODY_LINE + 5.0,
+        Block::Signatures(roles) => (roles.len() as f64 * 18.0).min(120.0),
+    }
+}
+
+/// Left edge and width of each column, mm.
+fn spans(table: &Table) -> Vec<(f64, f64)> {
+    let whole: f64 = table.columns.iter().map(|c| c.weight).sum();
+    let mut x = LEFT;
+    table
+        .columns
+        .iter()
+        .map(|column| {
+            let span = (x, WIDE_MM * column.weight / whole);
+            x += span.1;
+            span
+        })
+        .collect()
+}
+
+/// The lines of every cell of a row.
+fn wrapped(row: &Row, spans: &[(f64, f64)]) -> Vec<Vec<String>> {
+    row.cells
+        .iter()
+        .zip(spans)
+        .map(|(cell, (_, width))| font::wrap(cell, TABLE_PT, row.strong, (width - CELL_GAP) / MM_PER_PT))
+        .collect()
+}
+
+/// Height of a row of figures with captions, and the lines of each caption.
+fn figures_height(list: &[Figure]) -> (f64, Vec<Vec<String>>) {
+    let width = if list.len() > 1 { HALF_MM } else { WIDE_MM };
+    let captions: Vec<Vec<String>> = list
+        .iter()
+        .map(|f| match f.caption.as_str() {
+            "" => Vec::new(),
+            words => font::wrap(words, theme::LABEL_PT, false, width / MM_PER_PT),
+        })
+        .collect();
+    let under = captions.iter().map(|c| c.len() as f64 * CAPTION_LINE).fold(0.0f64, f64::max);
+    (tallest(list) + under + 3.0, captions)
+}
+
+fn tallest(list: &[Figure]) -> f64 {
+    list.iter().map(|f| f.drawing.height_mm).fold(0.0f64, f64::max)
 }
 
 struct Sheet {
@@ -112,7 +190,7 @@ impl Sheet {
     fn block(&mut self, block: &Block) {
         match block {
             Block::Heading(words) => self.heading(words),
-            Block::Paragraph(words) => self.paragraph(words, LEFT, WIDE_MM, false),
+            Block::Paragraph(words) | Block::Lead(words) => self.paragraph(words, LEFT, WIDE_MM, false),
             Block::Table(table) => self.table(table),
             Block::Figures(list) => self.figures(list),
             Block::Caution(words) => self.caution(words),
@@ -121,8 +199,6 @@ impl Sheet {
     }
 
     fn heading(&mut self, words: &str) {
-        // A heading stays with at least the first lines of what it heads.
-        self.need(32.0);
         if self.y > TOP {
             self.y += 6.5;
         }
@@ -148,31 +224,23 @@ impl Sheet {
 
     fn figures(&mut self, list: &[Figure]) {
         let step = if list.len() > 1 { HALF_MM + (WIDE_MM - 2.0 * HALF_MM) } else { 0.0 };
-        let width = if list.len() > 1 { HALF_MM } else { WIDE_MM };
-        let captions: Vec<Vec<String>> = list
-            .iter()
-            .map(|f| match f.caption.as_str() {
-                "" => Vec::new(),
-                words => font::wrap(words, theme::LABEL_PT, false, width / MM_PER_PT),
-            })
-            .collect();
-        let tallest = list.iter().map(|f| f.drawing.height_mm).fold(0.0f64, f64::max);
-        let under = captions.iter().map(|c| c.len() as f64 * 3.8).fold(0.0f64, f64::max);
-        self.need(tallest + under + 3.0);
+        let (height, captions) = figures_height(list);
+        let tallest = tallest(list);
+        self.need(height);
         let top = self.y - 3.0;
         for (index, (figure, caption)) in list.iter().zip(&captions).enumerate() {
             let x = LEFT + index as f64 * step;
             self.place(x, top, figure.drawing.marks.clone());
             for (n, line) in caption.iter().enumerate() {
-                let y = top + tallest + 3.0 + n as f64 * 3.8;
+                let y = top + tallest + 3.0 + n as f64 * CAPTION_LINE;
                 self.text(Text::new(at(x, y), line.clone(), theme::LABEL_PT, theme::QUIET));
             }
         }
-        self.y = top + tallest + under + 5.0;
+        self.y = top + height + 2.0;
     }
 
     fn caution(&mut self, words: &str) {
-        let (inset, bar) = (6.0, 2.2);
+        let (inset, bar) = (INSET, 2.2);
         let lines = font::wrap(words, BODY_PT, false, (WIDE_MM - inset - 5.0) / MM_PER_PT);
         let height = (lines.len() as f64 + 1.0) * BODY_LINE + 5.0;
         self.need(height);
@@ -210,28 +278,10 @@ impl Sheet {
     }
 
     fn table(&mut self, table: &Table) {
-        let whole: f64 = table.columns.iter().map(|c| c.weight).sum();
-        let mut x = LEFT;
-        let spans: Vec<(f64, f64)> = table
-            .columns
-            .iter()
-            .map(|column| {
-                let span = (x, WIDE_MM * column.weight / whole);
-                x += span.1;
-                span
-            })
-            .collect();
-        self.need(20.0);
+        let spans = spans(table);
         self.table_head(table, &spans);
         for row in &table.rows {
-            let cells: Vec<Vec<String>> = row
-                .cells
-                .iter()
-                .zip(&spans)
-                .map(|(cell, (_, width))| {
-                    font::wrap(cell, TABLE_PT, row.strong, (width - CELL_GAP) / MM_PER_PT)
-                })
-                .collect();
+            let cells = wrapped(row, &spans);
             self.table_row(table, &spans, &cells, row.strong);
         }
         self.y += 3.0;

@@ -13,9 +13,6 @@ pub mod number;
 pub mod pdf;
 pub mod recipe_csv;
 
-#[cfg(test)]
-mod tests;
-
 pub use content::PHOTOBIOLOGY_CAUTION;
 pub use model::{
     Assumption, LedgerLine, MeasuredValue, Method, RecipeRow, RecipeSheet, ReportModel, ShareRow, SourceFile,

@@ -14,6 +14,39 @@ pub fn significant(value: f64, digits: u32) -> String {
     with_true_minus(text)
 }
 
+/// The ends of an allowed band with so many significant digits, each rounded towards the inside, so that a value
+/// inside the printed band is inside the true one. A band too narrow for the digits gets more of them.
+pub fn band(low: Option<f64>, high: Option<f64>, digits: u32) -> (Option<String>, Option<String>) {
+    let digits = digits.clamp(1, 15);
+    let enough = (digits..=15)
+        .find(|n| match (low, high) {
+            (Some(low), Some(high)) => inward(low, *n, true) <= inward(high, *n, false),
+            _ => true,
+        })
+        .unwrap_or(15);
+    let shown = |value: f64, up: bool| significant(inward(value, enough, up), 15.min(enough + 1));
+    (low.map(|v| shown(v, true)), high.map(|v| shown(v, false)))
+}
+
+/// The next number with so many significant digits, upwards or downwards.
+fn inward(value: f64, digits: u32, up: bool) -> f64 {
+    if !value.is_finite() || value == 0.0 {
+        return value;
+    }
+    let magnitude = value.abs().log10().floor() as i32;
+    let unit = 10f64.powi((magnitude + 1 - digits as i32).clamp(-9, 0));
+    // A value that is already round must not be pushed a whole unit by its last bit.
+    let count = value / unit;
+    let nearest = count.round();
+    let near = (count - nearest).abs() <= 1e-9 * count.abs().max(1.0);
+    let whole = match (near, up) {
+        (true, _) => nearest,
+        (false, true) => count.ceil(),
+        (false, false) => count.floor(),
+    };
+    whole * unit
+}
+
 /// A number with so many decimals and a true minus; `unknown` when not finite.
 pub fn fixed(value: f64, decimals: usize) -> String {
     if value.is_finite() {
@@ -48,6 +81,19 @@ mod tests {
         assert_eq!(significant(-3.5, 4), "−3.5");
         assert_eq!(significant(123_456.0, 3), "123456");
         assert_eq!(significant(0.0, 4), "0");
+    }
+
+    #[test]
+    fn a_printed_band_lies_inside_the_true_one() {
+        let ends = |low, high| {
+            let (low, high) = band(Some(low), Some(high), 4);
+            (low.unwrap_or_default(), high.unwrap_or_default())
+        };
+        assert_eq!(ends(4.97251, 5.22759), ("4.973".to_owned(), "5.227".to_owned()));
+        assert_eq!(ends(92.16, 99.84), ("92.16".to_owned(), "99.84".to_owned()));
+        assert_eq!(ends(-0.1, 0.3), ("−0.1".to_owned(), "0.3".to_owned()));
+        assert_eq!(ends(5.0001, 5.0004), ("5.0001".to_owned(), "5.0004".to_owned()));
+        assert_eq!(band(None, None, 4), (None, None));
     }
 
     #[test]

@@ -67,7 +67,7 @@ impl Board {
         let columns = (self.columns.max(1) as usize).min(order.len().max(1));
         let rows = order.len().div_ceil(columns).max(1);
         let key_width = (0.42 * width_mm).clamp(50.0, 75.0);
-        let pitch = if self.pitch_mm.is_finite() && self.pitch_mm > 0.0 { self.pitch_mm } else { 5.0 };
+        let pitch = if (0.01..=1e4).contains(&self.pitch_mm) { self.pitch_mm } else { 5.0 };
         let room = Frame { x: 3.0, y: 3.0, width: width_mm - key_width - 12.0, height: 90.0 };
         let scale = (room.width / (columns as f64 * pitch)).min(room.height / (rows as f64 * pitch));
         let board =

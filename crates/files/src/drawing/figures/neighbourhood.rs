@@ -1,7 +1,8 @@
 //! The surroundings of a white in the u′v′ diagram.
 
 use crate::drawing::axis::{Axis, Plot, round_step};
-use crate::drawing::{Anchor, Drawing, Frame, Path, Pattern, Pen, Place, Text, at, font, theme};
+use crate::drawing::{Anchor, Drawing, Frame, MM_PER_PT, Path, Pattern, Pen, Place, Text, at, font, theme};
+use crate::report::number::fixed;
 use colour::{UvPrime, locus};
 use serde::{Deserialize, Serialize};
 
@@ -32,9 +33,9 @@ impl Neighbourhood {
             side + 20.0,
             "Chromaticity",
             format!(
-                "The blend at u′ {:.4}, v′ {:.4} with the Planckian locus{}{}.",
-                self.blend.u,
-                self.blend.v,
+                "The blend at u′ {}, v′ {} with the Planckian locus{}{}.",
+                fixed(self.blend.u, 4),
+                fixed(self.blend.v, 4),
                 if self.target.is_some() { ", the target" } else { "" },
                 if self.bin.len() > 2 { " and the region allowed" } else { "" },
             ),
@@ -70,7 +71,7 @@ impl Neighbourhood {
     fn paint_bin(&self, plot: &Plot, drawing: &mut Drawing) {
         if self.bin.len() > 2 {
             let outline = Path::through(self.bin.iter().map(|p| plot.place(p.u, p.v))).close();
-            drawing.shape(outline, theme::ACCENT.thinned(0.08), Pen::solid(theme::ACCENT, 0.35));
+            drawing.shape(outline, theme::PAPER, Pen::solid(theme::ACCENT, 0.35));
         }
     }
 
@@ -82,15 +83,12 @@ impl Neighbourhood {
             let radius = f64::from(*steps) * STEP_UV_PRIME * mm_per_unit;
             let pen = Pen::patterned(theme::QUIET, 0.22, Pattern::ShortDashed);
             drawing.stroke(Path::circle(centre, radius), pen);
-            drawing.text(
-                Text::new(
-                    at(centre.x, centre.y - radius - 0.7),
-                    steps.to_string(),
-                    theme::TICK_PT,
-                    theme::QUIET,
-                )
-                .anchored(Anchor::Middle),
-            );
+            if radius > 2.5 {
+                // Upper left, where the locus does not run.
+                let corner = at(centre.x - 0.707 * radius, centre.y - 0.707 * radius);
+                let words = Text::new(at(corner.x, corner.y + 0.8), steps.to_string(), 6.5, theme::QUIET);
+                cleared(drawing, words.anchored(Anchor::Middle));
+            }
         }
     }
 
@@ -141,6 +139,19 @@ fn cross(centre: Place, arm: f64) -> Path {
         .line_to(at(centre.x, centre.y + arm))
 }
 
+/// Text on a patch of the ground, so that lines behind do not run through it.
+fn cleared(drawing: &mut Drawing, text: Text) {
+    let (width, height) = (text.width_mm() + 0.8, font::CAPITAL_HEIGHT_EM * text.size_pt * MM_PER_PT + 0.8);
+    let left = match text.anchor {
+        Anchor::Start => text.place.x,
+        Anchor::Middle => text.place.x - width / 2.0,
+        Anchor::End => text.place.x - width,
+    };
+    let patch = Frame { x: left, y: text.place.y + 0.4 - height, width, height };
+    drawing.fill(patch.path(), theme::PANEL);
+    drawing.text(text);
+}
+
 /// The locus, and marks across it at round CCTs from Duv −0.002 to +0.002.
 fn paint_locus(plot: &Plot, drawing: &mut Drawing) {
     const SAMPLES: usize = 400;
@@ -166,14 +177,15 @@ fn paint_locus(plot: &Plot, drawing: &mut Drawing) {
         drawing.stroke(Path::line(below, above), Pen::solid(theme::INK, 0.22));
         let along = (below.x - above.x).hypot(below.y - above.y).max(1e-9);
         let out = at((below.x - above.x) / along, (below.y - above.y) / along);
-        drawing.text(
+        cleared(
+            drawing,
             Text::new(
                 at(below.x + 2.4 * out.x, below.y + 2.4 * out.y + 0.6),
                 format!("{cct:.0} K"),
                 theme::TICK_PT,
                 theme::INK,
             )
-            .anchored(if out.x > 0.3 { Anchor::Start } else { Anchor::Middle }),
+            .anchored(Anchor::Middle),
         );
         cct += step;
     }

@@ -72,7 +72,7 @@ struct Bar {
 fn bar_chart(width_mm: f64, title: &str, about: &str, ordinate: &str, bars: &[Bar]) -> Drawing {
     /// Below this the bars are cut and only the number tells.
     const LOWEST_SHOWN: f64 = -100.0;
-    let mut drawing = Drawing::new(width_mm, 50.0, title, about);
+    let mut drawing = Drawing::new(width_mm, 46.5, title, about);
     let frame = Frame { x: 15.0, y: 5.0, width: width_mm - 17.0, height: 36.0 };
     let least = bars.iter().filter_map(|b| b.value).fold(0.0f64, f64::min).max(LOWEST_SHOWN);
     let mut plot = Plot {
@@ -178,7 +178,7 @@ impl HueBins {
         drawing.stroke(Path::circle(centre, ring), Pen::solid(theme::QUIET, 0.35));
         let ends: Vec<Place> = (0..bins).map(|i| self.end(i, angle_of(i), centre, ring)).collect();
         if ends.iter().all(|p| p.x.is_finite()) && bins > 2 {
-            drawing.stroke(Path::through(ends.iter().copied()).close(), Pen::solid(theme::INK, 0.3));
+            drawing.stroke(Path::smooth_ring(&ends), Pen::solid(theme::INK, 0.3));
         }
         for (i, end) in ends.iter().enumerate() {
             arrow(&mut drawing, place(angle_of(i), ring), *end, theme::ACCENT);

@@ -46,7 +46,7 @@ impl SpectrumPlot {
                 if self.reference.is_some() { " and a reference light, dotted" } else { "" }
             ),
         );
-        let key_width = (0.32 * width_mm).clamp(44.0, 62.0);
+        let key_width = (0.36 * width_mm).clamp(44.0, 64.0);
         let frame = Frame { x: 14.0, y: 3.0, width: width_mm - key_width - 20.0, height: height - 15.0 };
         let plot = self.plot(frame);
         plot.ground(&mut drawing);
@@ -92,7 +92,7 @@ impl SpectrumPlot {
                         .chain(std::iter::once(Place { y: ground, ..*last })),
                 )
                 .close();
-                drawing.fill(area, emitter.look.ink.thinned(0.18));
+                drawing.fill(area, emitter.look.ink.thinned(0.15));
             }
         }
         for emitter in &self.emitters {

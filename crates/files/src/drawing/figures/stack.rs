@@ -134,7 +134,7 @@ impl StackSection {
 }
 
 fn thickness_of(layer: &StackLayer) -> f64 {
-    if layer.thickness_nm.is_finite() { layer.thickness_nm.max(0.0) } else { 0.0 }
+    if (0.0..=1e9).contains(&layer.thickness_nm) { layer.thickness_nm } else { 0.0 }
 }
 
 /// Move places (ascending) apart to at least `step`, staying between `low` and `high` as far as they fit.

@@ -2,6 +2,7 @@
 
 use super::{KEY_STEP, KeyLine, Look, Sample, key, scale_bar, shown, tag};
 use crate::drawing::{Anchor, Drawing, Frame, Path, Pen, Text, at, theme};
+use crate::report::number::significant;
 use serde::{Deserialize, Serialize};
 
 /// One stripe of the repeated pattern.
@@ -25,7 +26,7 @@ pub struct StripePlan {
 impl StripePlan {
     /// The pitch, µm: the sum of every width that is finite and positive.
     pub fn pitch_um(&self) -> f64 {
-        self.stripes.iter().map(|s| width_of(s)).sum()
+        self.stripes.iter().map(width_of).sum()
     }
 
     /// The drawing at a width in mm: two pitches to scale, and a key with widths.
@@ -111,7 +112,7 @@ impl StripePlan {
                     value: format!(
                         "{} µm, {} % of the pitch{}",
                         shown(width),
-                        shown(100.0 * width / pitch),
+                        significant(100.0 * width / pitch, 3),
                         if narrow { ", below the least width" } else { "" }
                     ),
                     bold: narrow,
@@ -120,7 +121,8 @@ impl StripePlan {
             .collect();
         let dark: f64 = self.stripes.iter().filter(|s| s.look.is_none()).map(width_of).sum();
         if dark > 0.0 {
-            let value = format!("{} µm, {} % of the pitch", shown(dark), shown(100.0 * dark / pitch));
+            let value =
+                format!("{} µm, {} % of the pitch", shown(dark), significant(100.0 * dark / pitch, 3));
             lines.push(plain("dark between stripes".to_owned(), value));
         }
         if let Some(least) = self.minimum_feature_um {
@@ -131,7 +133,7 @@ impl StripePlan {
 }
 
 fn width_of(stripe: &Stripe) -> f64 {
-    if stripe.width_um.is_finite() { stripe.width_um.max(0.0) } else { 0.0 }
+    if (0.0..=1e9).contains(&stripe.width_um) { stripe.width_um } else { 0.0 }
 }
 
 /// A dimension line with its words in the middle.
