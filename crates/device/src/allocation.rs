@@ -8,7 +8,7 @@
 
 use std::sync::Arc;
 
-use crate::roll_off::{scan_minimum, scan_minimum_to};
+use crate::search::{scan_minimum, scan_minimum_to};
 use crate::working::Characteristic;
 
 /// Currents looked at before refining.

@@ -15,6 +15,7 @@
 //! | [`whole_numbers`] | closest white of whole units |
 //! | [`power`] | device electrical power as an objective, with bounds |
 //! | [`efficacy`] | best lm/W over blends and freedoms, around a solver the caller brings |
+//! | [`sensitivity`], [`dimming`] | what each number, and dimming, does to the white |
 //! | [`made`], [`recipe`], [`bands`], [`bring_back`] | fabrication numbers, what a recipe says, allowed bands, the way back |
 //! | [`form`], [`channels`] | what the forms have in common |
 //! | [`units`] | physical constants |
@@ -31,21 +32,27 @@ pub mod calibration;
 pub mod channels;
 pub mod conversion;
 pub mod curve;
+pub mod dimming;
 pub mod efficacy;
 pub mod error;
 pub mod form;
 pub mod light;
 pub mod made;
 pub mod out_coupling;
+mod package_law;
 pub mod packages;
 pub mod power;
+mod predict;
 pub mod recipe;
 pub mod roll_off;
+mod search;
+pub mod sensitivity;
 pub mod series_stack;
 pub mod shared_zone;
 pub mod shares;
 pub mod sheet;
 pub mod side_by_side;
+mod stripe_rules;
 pub mod units;
 pub mod whole_numbers;
 pub mod working;

@@ -13,7 +13,7 @@ use std::sync::Arc;
 use crate::allocation::{self, Item};
 use crate::channels::Channels;
 use crate::error::DeviceError;
-use crate::roll_off::scan_minimum;
+use crate::search::scan_minimum;
 use crate::working::Characteristic;
 
 /// An affine function of the radiant powers of the emitters.

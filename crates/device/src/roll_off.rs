@@ -4,6 +4,7 @@ use serde::{Deserialize, Serialize};
 
 use crate::curve::Table;
 use crate::error::DeviceError;
+use crate::search::scan_minimum;
 use crate::units::ELEMENTARY_CHARGE_C;
 
 /// Triplet–triplet annihilation: `EQE/EQE0 = (J0/4J)·(√(1+8J/J0) − 1)`.
@@ -157,47 +158,6 @@ fn scaled_residual(rows: &[(f64, f64)], shape: impl Fn(f64) -> f64) -> (f64, f64
     let scale = if own > 0.0 { cross / own } else { 0.0 };
     let squares = rows.iter().map(|&(at, value)| (value - scale * shape(at)).powi(2)).sum();
     (scale, squares)
-}
-
-/// Place of the smallest value: a scan, then golden section between the neighbours of the best sample.
-pub(crate) fn scan_minimum(f: impl FnMut(f64) -> f64, low: f64, high: f64, samples: usize) -> f64 {
-    scan_minimum_to(f, low, high, samples, 60)
-}
-
-/// As [`scan_minimum`], with the number of golden-section steps (each narrows by 0.618).
-pub(crate) fn scan_minimum_to(
-    mut f: impl FnMut(f64) -> f64,
-    low: f64,
-    high: f64,
-    samples: usize,
-    golden_steps: usize,
-) -> f64 {
-    let step = (high - low) / samples as f64;
-    let mut best = (low, f64::INFINITY);
-    for k in 0..=samples {
-        let at = if k == samples { high } else { low + step * k as f64 };
-        let value = f(at);
-        if value < best.1 {
-            best = (at, value);
-        }
-    }
-    let golden = (5f64.sqrt() - 1.0) / 2.0;
-    let (mut a, mut b) = ((best.0 - step).max(low), (best.0 + step).min(high));
-    let (mut c, mut d) = (b - golden * (b - a), a + golden * (b - a));
-    let (mut fc, mut fd) = (f(c), f(d));
-    for _ in 0..golden_steps {
-        if fc <= fd {
-            (b, d, fd) = (d, c, fc);
-            c = b - golden * (b - a);
-            fc = f(c);
-        } else {
-            (a, c, fc) = (c, d, fd);
-            d = a + golden * (b - a);
-            fd = f(d);
-        }
-    }
-    let refined = if fc <= fd { (c, fc) } else { (d, fd) };
-    if refined.1 <= best.1 { refined.0 } else { best.0 }
 }
 
 #[cfg(test)]

@@ -3,13 +3,14 @@
 //! `N = (J/e)·EQE`, `M_e = J·EQE·1239.842/λ̄`, `M_v = M_e·LER`, `L = a·M_v/π` (a = 1 Lambertian),
 //! lm/W `= M_v/(J·V)`, wall-plug `= M_e/(J·V)`, cd/A `= L/J`.
 
-use crate::curve::{Curve, TABLE_REACH, Table};
+use crate::curve::{Curve, TABLE_REACH};
 use crate::error::{DeviceError, Notice};
 use crate::light::{DeviceEmitter, EmitterLight};
 use crate::out_coupling::{CouplingFactor, Inclusion};
 use crate::roll_off::{AbcRollOff, TripletRollOff};
+use crate::search::root_between;
 use crate::sheet::{EqeModel, Sheet, VoltageModel};
-use crate::units::{A_PER_M2_IN_MA_PER_CM2, PHOTON_ENERGY_EV_NM, PHOTONS_PER_S_M2_IN_MA_PER_CM2};
+use crate::units::{A_PER_M2_IN_MA_PER_CM2, PHOTONS_PER_S_M2_IN_MA_PER_CM2};
 
 /// Current densities searched where neither tables nor limits say anything, mA/cm² (common practice).
 pub const DEFAULT_CURRENT_RANGE_MA_PER_CM2: (f64, f64) = (1e-3, 1e3);
@@ -87,7 +88,11 @@ impl Characteristic {
         Characteristic::in_unit(emitter, "mA/cm²")
     }
 
-    fn in_unit(emitter: &DeviceEmitter, unit: &'static str) -> Result<Characteristic, DeviceError> {
+    /// As [`Characteristic::of`], with currents in another unit.
+    pub(crate) fn in_unit(
+        emitter: &DeviceEmitter,
+        unit: &'static str,
+    ) -> Result<Characteristic, DeviceError> {
         let sheet = &emitter.sheet;
         let mut missing = Vec::new();
         let mut eqe_factor = 1.0;
@@ -196,79 +201,6 @@ impl Characteristic {
         Ok(made)
     }
 
-    /// A packaged emitter: the same laws over its current in mA instead of a current density.
-    ///
-    /// The flux at the test current fixes the EQE there, `N/(I/e)`; a relative-flux table gives it elsewhere, or
-    /// the sheet's EQE(J) over the die area; with neither the EQE is taken constant, and likewise the voltage.
-    ///
-    /// # Errors
-    /// [`DeviceError::Missing`] without test current or flux; otherwise as [`Characteristic::of`].
-    pub fn of_package(emitter: &DeviceEmitter) -> Result<Characteristic, DeviceError> {
-        let missing = |missing: &str| DeviceError::Missing {
-            emitter: emitter.name.clone(),
-            missing: missing.to_owned(),
-        };
-        let lacking = emitter.sheet.missing_for_package();
-        let package = emitter.sheet.package.as_ref();
-        let (Some(package), Some(test_ma), Some(watts)) =
-            (package, package.and_then(|p| p.test_current_ma), package_flux_w(emitter))
-        else {
-            return Err(missing(lacking.first().map_or("the package data are missing", String::as_str)));
-        };
-        above_zero("the package's test current", test_ma)?;
-        above_zero("the package's flux", watts)?;
-        // Photon current in mA over current in mA.
-        let eqe = watts * emitter.light.mean_wavelength_nm / PHOTON_ENERGY_EV_NM / (1e-3 * test_ma);
-        let area_cm2 = package.die_area_mm2.map(|mm2| mm2 * 1e-2);
-        let mut sheet = Sheet { temperature: emitter.sheet.temperature.clone(), ..Sheet::default() };
-        sheet.angular_factor = emitter.sheet.angular_factor;
-        sheet.eqe = Some(match (&package.relative_flux, &emitter.sheet.eqe, area_cm2) {
-            (Some(table), _, _) => {
-                let curve = table.curve("relative flux", "mA")?;
-                let at_test = curve.read(test_ma)?.value;
-                let point = |&(ma, flux): &(f64, f64)| (ma, eqe * (flux / at_test) * (test_ma / ma));
-                EqeModel::Table(Table::new(table.points.iter().map(point).collect()))
-            }
-            (None, Some(law), Some(area)) => {
-                above_zero("the die area", area)?;
-                let bare = DeviceEmitter {
-                    sheet: Sheet { eqe: Some(law.clone()), ..Sheet::default() },
-                    temperature_c: None,
-                    ..emitter.clone()
-                };
-                let factor = eqe / Characteristic::of(&bare)?.eqe(test_ma / area);
-                match law {
-                    EqeModel::Table(table) => EqeModel::Table(Table::new(
-                        table.points.iter().map(|&(j, value)| (j * area, value * factor)).collect(),
-                    )),
-                    EqeModel::TripletTriplet(model) => EqeModel::TripletTriplet(TripletRollOff {
-                        low_current_eqe: model.low_current_eqe * factor,
-                        half_current_ma_per_cm2: model.half_current_ma_per_cm2 * area,
-                    }),
-                    EqeModel::Abc(model) => EqeModel::Abc(AbcRollOff {
-                        peak_current_ma_per_cm2: model.peak_current_ma_per_cm2 * area,
-                        extraction: model.extraction * factor,
-                        ..*model
-                    }),
-                    EqeModel::Constant(_) => EqeModel::Constant(eqe),
-                }
-            }
-            _ => EqeModel::Constant(eqe),
-        });
-        sheet.voltage = match (&package.forward_voltage, package.forward_voltage_v) {
-            (Some(table), _) => Some(VoltageModel::Table(table.clone())),
-            (None, Some(volts)) => Some(VoltageModel::Constant(volts)),
-            (None, None) => None,
-        };
-        sheet.wall_plug = emitter.sheet.wall_plug;
-        sheet.maximum_current_ma_per_cm2 = Some(package.maximum_current_ma.unwrap_or(test_ma));
-        sheet.minimum_current_ma_per_cm2 = package.minimum_current_ma;
-        let in_ma = DeviceEmitter { sheet, ..emitter.clone() };
-        let mut made = Characteristic::in_unit(&in_ma, "mA")?;
-        made.missing = lacking;
-        Ok(made)
-    }
-
     fn set_range(&mut self, minimum: Option<f64>, maximum: Option<f64>) -> Result<(), DeviceError> {
         let (mut low, mut high) = (0.0f64, f64::INFINITY);
         for curve in [self.eqe_curve(), self.voltage_curve()].into_iter().flatten() {
@@ -353,6 +285,11 @@ impl Characteristic {
     ) -> Result<Characteristic, DeviceError> {
         let bare = DeviceEmitter { sheet: Sheet::default(), temperature_c: None, ..emitter.clone() };
         Ok(Characteristic { missing, ..Characteristic::of(&bare)? })
+    }
+
+    /// The same characteristic with other sentences on what is missing.
+    pub(crate) fn saying(self, missing: Vec<String>) -> Characteristic {
+        Characteristic { missing, ..self }
     }
 
     /// Whether EQE(J) is known.
@@ -545,54 +482,6 @@ impl Characteristic {
             notices,
         })
     }
-}
-
-/// Root of a function that is negative at `low` and positive at `high`: false position with halving of the
-/// stale end (Illinois rule), kept inside a shrinking bracket; the side where the function is not negative.
-pub(crate) fn root_between(f: impl Fn(f64) -> f64, low: f64, high: f64) -> f64 {
-    let (mut a, mut b) = (low, high);
-    let (mut fa, mut fb) = (f(a), f(b));
-    if fa >= 0.0 {
-        return a;
-    }
-    let mut side = 0i8;
-    for step in 0..120 {
-        // Every third step halves the bracket, so that a bad shape cannot stall the search.
-        let slope = (a * fb - b * fa) / (fb - fa);
-        let middle =
-            if step % 3 == 2 || slope <= a || slope >= b || slope.is_nan() { 0.5 * (a + b) } else { slope };
-        if middle <= a || middle >= b {
-            break;
-        }
-        let value = f(middle);
-        if value == 0.0 {
-            return middle;
-        }
-        if value < 0.0 {
-            (a, fa) = (middle, value);
-            if side == -1 {
-                fb *= 0.5;
-            }
-            side = -1;
-        } else {
-            (b, fb) = (middle, value);
-            if side == 1 {
-                fa *= 0.5;
-            }
-            side = 1;
-        }
-    }
-    b
-}
-
-/// Radiant watts of a package at its test current: stated, or from the middle of its flux bin.
-fn package_flux_w(emitter: &DeviceEmitter) -> Option<f64> {
-    let package = emitter.sheet.package.as_ref()?;
-    if let Some(watts) = package.radiant_flux_w {
-        return Some(watts);
-    }
-    let lumens = 0.5 * (package.flux_bin_low_lm? + package.flux_bin_high_lm?);
-    (emitter.light.ler_lm_per_w > 0.0).then(|| lumens / emitter.light.ler_lm_per_w)
 }
 
 /// A setting that must be a finite number above zero.

@@ -112,9 +112,9 @@ fn vertices(emitters: &[DeviceEmitter]) -> Vertices {
 fn brute(model: &PowerModel, solver: &Vertices, lumens: f64) -> Option<f64> {
     let ends: Vec<Vec<f64>> =
         [1.0, -1.0].iter().map(|sign| solver.solve(&[0.0, *sign, 0.0, 0.0], &[]).unwrap().0).collect();
-    (0..=200)
+    (0..=120)
         .filter_map(|k| {
-            let t = f64::from(k) / 200.0;
+            let t = f64::from(k) / 120.0;
             let radiant: Vec<f64> =
                 ends[0].iter().zip(&ends[1]).map(|(a, b)| lumens * (a + (b - a) * t)).collect();
             model.least_power(&radiant).ok().map(|least| least.watts)
