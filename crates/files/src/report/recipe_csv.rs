@@ -63,7 +63,7 @@ pub fn write(rows: &[RecipeRow]) -> Result<String, CsvError> {
     )
 }
 
-/// The rows of a text written by [`write`].
+/// The rows of a text written by [`write()`].
 ///
 /// # Errors
 /// When the header, a row or a number is not what was expected; the line is named.

@@ -1,8 +1,8 @@
 //! Rendering: R1–R15, fidelity by hue, and the shifts of hue and chroma.
 
-use super::shown;
 use crate::drawing::axis::{Axis, Plot};
 use crate::drawing::{Anchor, Drawing, Frame, Ink, Path, Pattern, Pen, Place, Text, at, theme};
+use crate::report::number::significant;
 use serde::{Deserialize, Serialize};
 use std::f64::consts::TAU;
 
@@ -240,7 +240,7 @@ impl HueBins {
             .filter_map(|(i, shift)| shift.filter(|s| s.is_finite()).map(|s| (i + 1, s)))
             .max_by(|a, b| a.1.abs().total_cmp(&b.1.abs()));
         greatest.map_or_else(String::new, |(bin, shift)| {
-            format!("Greatest chroma shift: {} % in hue bin {bin}.", shown(shift))
+            format!("Greatest chroma shift: {} % in hue bin {bin}.", significant(shift, 2))
         })
     }
 }
