@@ -4,7 +4,7 @@ use super::Exit;
 use super::output::{self, Table, cell};
 use crate::solving::{Sources, measure_blend, metric, value_of};
 use colour::Measurement;
-use optimiser::{Infeasible, Outcome, Solution};
+use optimiser::{Infeasible, Nearest, Outcome, Solution};
 use project::{Limit, Metric, WhiteSpec};
 use serde::Serialize;
 use serde_json::{Map, Value};
@@ -31,7 +31,8 @@ pub(super) struct AnswerRecord {
     pub(super) grade: Option<&'static str>,
     pub(super) measured: Option<Measurement>,
     pub(super) limits: Vec<LimitRecord>,
-    pub(super) seconds: f64,
+    /// Null inside a list that was solved as one.
+    pub(super) seconds: Option<f64>,
     pub(super) boxes: u64,
     pub(super) stopped_by: Option<&'static str>,
     #[serde(skip_serializing_if = "Option::is_none")]
@@ -109,14 +110,14 @@ impl Asked<'_> {
     }
 
     /// The answer in the contract's words.
-    pub(super) fn record(&self, outcome: &Outcome, seconds: f64) -> AnswerRecord {
+    pub(super) fn record(&self, outcome: &Outcome, seconds: Option<f64>) -> AnswerRecord {
         match outcome {
             Outcome::Optimal(solution) => self.optimal(solution, seconds),
             Outcome::Infeasible(infeasible) => self.infeasible(infeasible, seconds),
         }
     }
 
-    fn optimal(&self, solution: &Solution, seconds: f64) -> AnswerRecord {
+    fn optimal(&self, solution: &Solution, seconds: Option<f64>) -> AnswerRecord {
         let measured = self.measured(&solution.shares);
         AnswerRecord {
             status: Some("optimal"),
@@ -134,38 +135,16 @@ impl Asked<'_> {
         }
     }
 
-    fn infeasible(&self, infeasible: &Infeasible, seconds: f64) -> AnswerRecord {
+    fn infeasible(&self, infeasible: &Infeasible, seconds: Option<f64>) -> AnswerRecord {
         let nearest = &infeasible.nearest;
         let measured = self.measured(&nearest.shares);
-        let limit_of = |m: optimiser::Metric| {
-            let one = Metric::ALL.into_iter().find(|one| metric(*one) == m).unwrap_or(Metric::Ra);
-            *self.white.limits.of(one)
-        };
         AnswerRecord {
             status: Some("infeasible"),
             limits: self.limits(&measured, &nearest.shares),
             seconds,
             boxes: infeasible.boxes,
             stopped_by: infeasible.stopped_by.map(optimiser::Stop::key),
-            nearest: Some(NearestRecord {
-                shares: nearest.shares.clone(),
-                u: nearest.u,
-                v: nearest.v,
-                distance_uv1960: nearest.distance_uv1960,
-                cct_k: nearest.cct_k,
-                duv: nearest.duv,
-                shortfalls: nearest
-                    .shortfalls
-                    .iter()
-                    .map(|s| ShortfallRecord {
-                        name: s.metric.key(),
-                        value: s.value,
-                        low: limit_of(s.metric).low,
-                        high: limit_of(s.metric).high,
-                        short_by: s.by.abs(),
-                    })
-                    .collect(),
-            }),
+            nearest: Some(self.nearest(nearest)),
             reachable: Some(
                 infeasible
                     .reachable
@@ -191,6 +170,35 @@ impl Asked<'_> {
     }
 }
 
+impl Asked<'_> {
+    /// The nearest blend in the contract's words.
+    pub(super) fn nearest(&self, nearest: &Nearest) -> NearestRecord {
+        let limit_of = |m: optimiser::Metric| {
+            let one = Metric::ALL.into_iter().find(|one| metric(*one) == m);
+            one.map_or_else(Limit::default, |one| *self.white.limits.of(one))
+        };
+        NearestRecord {
+            shares: nearest.shares.clone(),
+            u: nearest.u,
+            v: nearest.v,
+            distance_uv1960: nearest.distance_uv1960,
+            cct_k: nearest.cct_k,
+            duv: nearest.duv,
+            shortfalls: nearest
+                .shortfalls
+                .iter()
+                .map(|s| ShortfallRecord {
+                    name: s.metric.key(),
+                    value: s.value,
+                    low: limit_of(s.metric).low,
+                    high: limit_of(s.metric).high,
+                    short_by: s.by.abs(),
+                })
+                .collect(),
+        }
+    }
+}
+
 fn is_met(limit: Limit, value: Option<f64>) -> bool {
     value.is_some_and(|v| limit.margin(v).is_none_or(|margin| margin >= -MET_TOLERANCE))
 }
@@ -201,9 +209,14 @@ impl AnswerRecord {
         Self { message: Some(message), ..Self::default() }
     }
 
+    /// True when there is a blend.
+    pub(super) fn is_optimal(&self) -> bool {
+        self.status == Some("optimal")
+    }
+
     /// The exit code the answer leads to.
     pub(super) fn exit(&self) -> Exit {
-        if self.status == Some("optimal") { Exit::Done } else { Exit::No }
+        if self.is_optimal() { Exit::Done } else { Exit::No }
     }
 
     /// The proof in a sentence.

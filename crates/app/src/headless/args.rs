@@ -2,7 +2,7 @@
 
 use super::numbers;
 use clap::{Args, ValueEnum};
-use project::{Limit, Limits, Maximise, Region, WhiteSpec};
+use project::{Limit, Limits, Maximise, Metric, Region, WhiteSpec};
 use std::path::PathBuf;
 
 /// How the answer is printed.
@@ -188,6 +188,36 @@ impl LimitArgs {
             maximise: self.maximise.into(),
             lumens: None,
             luminance_cd_per_m2: None,
+        }
+    }
+}
+
+/// A metric that can be limited.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub enum MetricChoice {
+    /// CIE 13.3 Ra
+    Ra,
+    /// CIE 13.3 R9
+    R9,
+    /// CIE 224 / TM-30 Rf
+    Rf,
+    /// TM-30 Rg
+    Rg,
+    /// Luminous efficacy of radiation
+    Ler,
+    /// Lumens per electrical watt
+    Efficacy,
+}
+
+impl From<MetricChoice> for Metric {
+    fn from(choice: MetricChoice) -> Self {
+        match choice {
+            MetricChoice::Ra => Self::Ra,
+            MetricChoice::R9 => Self::R9,
+            MetricChoice::Rf => Self::Rf,
+            MetricChoice::Rg => Self::Rg,
+            MetricChoice::Ler => Self::Ler,
+            MetricChoice::Efficacy => Self::Efficacy,
         }
     }
 }

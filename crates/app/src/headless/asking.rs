@@ -7,7 +7,9 @@ use crate::solving::{self, SolvingError, Sources};
 use ::files::read::{Outcome, Reading};
 use optimiser::{Budget, Problem};
 use project::WhiteSpec;
+use serde::Serialize;
 use std::path::Path;
+use std::time::Instant;
 
 /// Why nothing could be asked: the exit code and the sentence (already printed on the error stream).
 #[derive(Debug)]
@@ -76,6 +78,30 @@ impl Loaded {
         problem.budget = budget_of(budget);
         Ok(problem)
     }
+}
+
+/// Runs a job on the optimiser and tells how long it took.
+pub(super) fn timed<T, E: std::fmt::Display>(
+    option: &str,
+    job: impl FnOnce() -> Result<T, E>,
+) -> Result<(T, f64), Stopped> {
+    let start = Instant::now();
+    let done = job().map_err(|error| Stopped::at(option, error))?;
+    Ok((done, start.elapsed().as_secs_f64()))
+}
+
+/// Finishes a command: the exit code of what was done, or the record of what could not be asked.
+pub(super) fn finish<R: Serialize>(
+    result: Result<Exit, Stopped>,
+    json: bool,
+    unanswered: impl FnOnce(String) -> R,
+) -> Exit {
+    result.unwrap_or_else(|stopped| {
+        if json {
+            output::json(&unanswered(stopped.message));
+        }
+        stopped.exit
+    })
 }
 
 /// The option a faulty question comes from.

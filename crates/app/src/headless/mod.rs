@@ -7,25 +7,39 @@
 mod answer;
 mod args;
 mod asking;
+mod choose;
 mod correct;
+mod drop;
 mod exit;
 mod files;
+mod frontier;
 mod measure;
+mod missing;
 mod numbers;
 mod output;
+mod packages;
+mod prices;
 mod read;
 mod solve;
+mod table;
 mod usage;
 
 pub use args::{
-    AnswerArgs, AxisAnswer, BudgetArgs, DecimalAnswer, EmitterArgs, LimitArgs, MaximiseChoice,
+    AnswerArgs, AxisAnswer, BudgetArgs, DecimalAnswer, EmitterArgs, LimitArgs, MaximiseChoice, MetricChoice,
     OrdinateAnswer, OutputArgs, PerAnswer, SolvingArgs, TargetArgs,
 };
+pub use choose::ChooseArgs;
 pub use correct::CorrectArgs;
+pub use drop::DropArgs;
 pub use exit::{BadInput, Exit};
+pub use frontier::FrontierArgs;
 pub use measure::MeasureArgs;
+pub use missing::MissingArgs;
+pub use packages::PackagesArgs;
+pub use prices::PricesArgs;
 pub use read::ReadArgs;
 pub use solve::SolveArgs;
+pub use table::TableArgs;
 
 use crate::window::{self, Renderer};
 use clap::{Parser, Subcommand};
@@ -57,6 +71,20 @@ pub enum Command {
     Measure(MeasureArgs),
     /// See [`SolveArgs`].
     Solve(Box<SolveArgs>),
+    /// See [`FrontierArgs`].
+    Frontier(Box<FrontierArgs>),
+    /// See [`ChooseArgs`].
+    Choose(Box<ChooseArgs>),
+    /// See [`TableArgs`].
+    Table(Box<TableArgs>),
+    /// See [`PackagesArgs`].
+    Packages(Box<PackagesArgs>),
+    /// See [`MissingArgs`].
+    Missing(Box<MissingArgs>),
+    /// See [`DropArgs`].
+    Drop(Box<DropArgs>),
+    /// See [`PricesArgs`].
+    Prices(Box<PricesArgs>),
     /// See [`CorrectArgs`].
     Correct(CorrectArgs),
 }
@@ -79,6 +107,13 @@ fn perform(command: &Command) -> Exit {
         Command::Read(args) => read::run(args),
         Command::Measure(args) => measure::run(args),
         Command::Solve(args) => solve::run(args),
+        Command::Frontier(args) => frontier::run(args),
+        Command::Choose(args) => choose::run(args),
+        Command::Table(args) => table::run(args),
+        Command::Packages(args) => packages::run(args),
+        Command::Missing(args) => missing::run(args),
+        Command::Drop(args) => drop::run(args),
+        Command::Prices(args) => prices::run(args),
         Command::Correct(args) => correct::run(args),
     }
 }

@@ -48,3 +48,11 @@ pub(super) fn count(text: &str) -> Result<usize, String> {
 pub(super) fn boxes(text: &str) -> Result<u64, String> {
     text.trim().parse().map_err(|_| format!("expected a whole number of boxes, found `{text}`"))
 }
+
+/// A range with both ends, above zero.
+pub(super) fn span(text: &str) -> Result<(f64, f64), String> {
+    let ends =
+        text.split_once("..").and_then(|(low, high)| Some((positive(low).ok()?, positive(high).ok()?)));
+    ends.filter(|(low, high)| low <= high)
+        .ok_or_else(|| format!("expected a range such as 420..680, found `{text}`"))
+}

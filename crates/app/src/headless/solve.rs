@@ -2,11 +2,10 @@
 
 use super::answer::AnswerRecord;
 use super::args::{SolvingArgs, TargetArgs};
-use super::asking::{Stopped, load_for};
+use super::asking::{Stopped, finish, load_for, timed};
 use super::{Exit, output};
 use clap::Args;
 use optimiser::Control;
-use std::time::Instant;
 
 /// Find the best blend of a file's emitters at a white, within limits, with its bound
 #[derive(Debug, Args)]
@@ -21,15 +20,7 @@ pub struct SolveArgs {
 
 /// Runs the command.
 pub(super) fn run(args: &SolveArgs) -> Exit {
-    match solve(args) {
-        Ok(exit) => exit,
-        Err(stopped) => {
-            if args.solving.output.json {
-                output::json(&AnswerRecord::unanswered(stopped.message));
-            }
-            stopped.exit
-        }
-    }
+    finish(solve(args), args.solving.output.json, AnswerRecord::unanswered)
 }
 
 fn solve(args: &SolveArgs) -> Result<Exit, Stopped> {
@@ -37,10 +28,8 @@ fn solve(args: &SolveArgs) -> Result<Exit, Stopped> {
     let white = args.solving.limits.spec(args.target.cct, args.target.duv);
     let problem = loaded.problem(&white, args.solving.budget)?;
     let asked = loaded.asked(&white);
-    let start = Instant::now();
-    let outcome =
-        optimiser::solve(&problem, &Control::none()).map_err(|error| Stopped::at("arguments", error))?;
-    let record = asked.record(&outcome, start.elapsed().as_secs_f64());
+    let (outcome, seconds) = timed("arguments", || optimiser::solve(&problem, &Control::none()))?;
+    let record = asked.record(&outcome, Some(seconds));
     if args.solving.output.json {
         output::json(&record);
         record.message.iter().for_each(output::sentence);

@@ -2,6 +2,7 @@
 
 mod arguments;
 mod correct;
+mod jobs;
 mod measure;
 mod read;
 mod solve;

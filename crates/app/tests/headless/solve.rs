@@ -3,21 +3,22 @@
 use crate::support::{data, file, gaussians, keys, whitesmith, words};
 use serde_json::Value;
 
-const KEYS: &str = "status shares objective upper_bound gap grade measured limits seconds boxes stopped_by";
+pub(crate) const KEYS: &str =
+    "status shares objective upper_bound gap grade measured limits seconds boxes stopped_by";
 const INFEASIBLE_KEYS: &str = "status shares objective upper_bound gap grade measured limits seconds boxes \
     stopped_by nearest reachable relaxations message";
 const NEAREST_KEYS: &str = "shares u v distance_uv1960 cct_k duv shortfalls";
 
-fn parse(name: &str) -> Value {
+pub(crate) fn parse(name: &str) -> Value {
     serde_json::from_str(&std::fs::read_to_string(data(name)).unwrap()).unwrap()
 }
 
-fn entry(list: &Value, id: &str) -> Value {
+pub(crate) fn entry(list: &Value, id: &str) -> Value {
     list.as_array().unwrap().iter().find(|p| p["id"] == id).unwrap().clone()
 }
 
 /// The command line of a problem at one white.
-fn arguments(problem: &Value) -> Vec<String> {
+pub(crate) fn arguments(problem: &Value) -> Vec<String> {
     let csv = data("solve").join(problem["spectra_csv"].as_str().unwrap());
     let target = &problem["target"];
     let number = |v: &Value| v.as_f64().unwrap();
@@ -55,7 +56,7 @@ fn arguments(problem: &Value) -> Vec<String> {
 
 /// An optimal answer: its keys, its limits in its own numbers, and its objective against the best known.
 #[track_caller]
-fn check_optimal(id: &str, answer: &Value, problem: &Value, best: f64) {
+pub(crate) fn check_optimal(id: &str, answer: &Value, problem: &Value, best: f64) {
     assert_eq!(answer["status"], "optimal", "{id}: {answer}");
     let shares: Vec<f64> = answer["shares"].as_array().unwrap().iter().map(|s| s.as_f64().unwrap()).collect();
     assert_eq!(shares.len(), problem["emitters"].as_array().unwrap().len(), "{id}");
@@ -111,7 +112,7 @@ fn every_problem_at_one_white_is_answered_as_well_as_is_known() {
 
 /// The white lies where it was asked for.
 #[track_caller]
-fn check_white(id: &str, answer: &Value, problem: &Value) {
+pub(crate) fn check_white(id: &str, answer: &Value, problem: &Value) {
     let (measured, target) = (&answer["measured"], &problem["target"]);
     let off =
         |key: &str, name: &str| (measured[key].as_f64().unwrap() - target[name].as_f64().unwrap()).abs();
