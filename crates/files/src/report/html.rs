@@ -11,16 +11,17 @@ const STYLE: &str = "
 * { box-sizing: border-box; }
 html { background: var(--ground); }
 body { margin: 2rem auto; padding: 2.4rem 2.6rem; max-width: 60rem; background: var(--paper); color: var(--ink);
-  font: 15px/1.5 'Noto Sans', system-ui, sans-serif; font-variant-numeric: tabular-nums; overflow-wrap: anywhere; }
-h1 { font-size: 1.9rem; line-height: 1.2; margin: 0 0 1rem; padding-bottom: .7rem; border-bottom: 3px solid var(--accent); }
-h2 { font-size: 1.1rem; margin: 2.2rem 0 .6rem; break-after: avoid; }
-p { margin: .5rem 0 .8rem; max-width: 46rem; }
+  font: 15px/1.5 'Noto Sans', system-ui, sans-serif; font-variant-numeric: tabular-nums; overflow-wrap: break-word; }
+h1 { font-size: 1.9em; line-height: 1.2; margin: 0 0 .5em; padding-bottom: .35em; border-bottom: 3px solid var(--accent); }
+h2 { font-size: 1.1em; margin: 2em 0 .5em; break-after: avoid; }
+p { margin: .5em 0 .8em; max-width: 46em; }
+.lead { break-after: avoid; }
 dl { display: grid; grid-template-columns: max-content 1fr; gap: .15rem 1.4rem; margin: 0; }
 dt, th, figcaption, footer { color: var(--quiet); }
 dd { margin: 0; }
-table { border-collapse: collapse; width: 100%; font-size: .9rem; }
+table { border-collapse: collapse; width: 100%; table-layout: fixed; font-size: .88em; }
 th { font-weight: 400; text-align: left; border-bottom: 1.5px solid var(--ink); vertical-align: bottom; }
-th, td { padding: .3rem .9rem .3rem 0; }
+th, td { padding: .3em .9em .3em 0; }
 td { border-bottom: 1px solid var(--rule); vertical-align: top; }
 th.n, td.n { text-align: right; }
 tr.strong td { font-weight: 700; }
@@ -28,12 +29,12 @@ thead { display: table-header-group; }
 tr, figure { break-inside: avoid; }
 figure { margin: .8rem 0; flex: 1 1 0; min-width: 0; }
 figure svg { display: block; width: 100%; height: auto; }
-figcaption { font-size: .82rem; }
-.pair { display: flex; gap: 1.5rem; }
+figcaption { font-size: .82em; }
+.pair { display: flex; gap: 1.5em; break-inside: avoid; }
 .caution { border: 1.5px solid var(--ink); border-left: 8px solid var(--ink); padding: .7rem 1rem; break-inside: avoid; }
 .sign { display: grid; grid-template-columns: repeat(auto-fit, minmax(14rem, 1fr)); gap: 1.5rem; break-inside: avoid; }
-.sign div { border-bottom: 1px solid var(--ink); height: 4.2rem; color: var(--quiet); font-size: .85rem; }
-footer { margin-top: 2.5rem; font-size: .82rem; border-top: 1px solid var(--rule); padding-top: .5rem; }
+.sign div { border-bottom: 1px solid var(--ink); height: 4.6em; color: var(--quiet); font-size: .85em; }
+footer { margin-top: 2.5rem; font-size: .82em; border-top: 1px solid var(--rule); padding-top: .5em; }
 @media (max-width: 40rem) { body { margin: 0; padding: 1.2rem; } .pair { display: block; } }
 @page { size: A4; margin: 18mm; }
 @media print { html, body { background: none; } body { margin: 0; padding: 0; max-width: none; font-size: 9.5pt; } }
@@ -79,12 +80,18 @@ fn print(block: &Block, figures: &mut usize, out: &mut String) {
         Block::Heading(words) => {
             put!(out, "<h2>{}</h2>\n", escaped(words));
         }
-        Block::Paragraph(words) | Block::Lead(words) => {
+        Block::Paragraph(words) => {
             put!(out, "<p>{}</p>\n", escaped(words));
+        }
+        Block::Lead(words) => {
+            put!(out, "<p class=\"lead\">{}</p>\n", escaped(words));
         }
         Block::Table(table) => self::table(table, out),
         Block::Figures(list) => {
-            out.push_str("<div class=\"pair\">\n");
+            let pair = list.len() > 1;
+            if pair {
+                out.push_str("<div class=\"pair\">\n");
+            }
             for Figure { drawing, caption } in list {
                 *figures += 1;
                 put!(out, "<figure>\n{}", inline(drawing, &format!("f{figures}")));
@@ -93,7 +100,9 @@ fn print(block: &Block, figures: &mut usize, out: &mut String) {
                 }
                 out.push_str("</figure>\n");
             }
-            out.push_str("</div>\n");
+            if pair {
+                out.push_str("</div>\n");
+            }
         }
         Block::Caution(words) => {
             put!(out, "<p class=\"caution\"><strong>Caution.</strong> {}</p>\n", escaped(words));
@@ -110,7 +119,12 @@ fn print(block: &Block, figures: &mut usize, out: &mut String) {
 
 fn table(table: &Table, out: &mut String) {
     let class = |right: bool| if right { " class=\"n\"" } else { "" };
-    out.push_str("<table>\n<thead><tr>");
+    let whole: f64 = table.columns.iter().map(|c| c.weight).sum();
+    out.push_str("<table>\n<colgroup>");
+    for column in &table.columns {
+        put!(out, "<col style=\"width: {:.2}%\"/>", 100.0 * column.weight / whole);
+    }
+    out.push_str("</colgroup>\n<thead><tr>");
     for column in &table.columns {
         put!(out, "<th{}>{}</th>", class(column.right), escaped(column.title));
     }

@@ -30,7 +30,7 @@ impl Neighbourhood {
         let side = (width_mm - 22.0).max(20.0);
         let mut drawing = Drawing::new(
             width_mm,
-            side + 20.0,
+            side + 23.0,
             "Chromaticity",
             format!(
                 "The blend at u′ {}, v′ {} with the Planckian locus{}{}.",
@@ -105,23 +105,14 @@ impl Neighbourhood {
     fn words(&self, frame: Frame, drawing: &mut Drawing) {
         let y = frame.bottom() + 14.6;
         let middle = y - 0.95;
-        let mut x = frame.x;
-        let mut say = |drawing: &mut Drawing, words: &str| {
-            let text = Text::new(at(x, y), words, theme::TICK_PT, theme::INK);
-            let width = text.width_mm();
-            drawing.text(text);
-            x += width + 4.0;
-            x
-        };
-        drawing.shape(
-            Path::circle(at(frame.x - 3.0, middle), 0.95),
-            theme::INK,
-            Pen::solid(theme::PAPER, 0.2),
-        );
-        let next = say(drawing, "the blend");
+        let said = Text::new(at(frame.x, y), "the blend", theme::TICK_PT, theme::INK);
+        let next = frame.x + said.width_mm() + 5.5;
+        let dot = Path::circle(at(frame.x - 3.0, middle), 0.95);
+        drawing.shape(dot, theme::INK, Pen::solid(theme::PAPER, 0.2));
+        drawing.text(said);
         if self.target.is_some() {
             drawing.stroke(cross(at(next, middle), 1.5), Pen::solid(theme::ACCENT, 0.6));
-            say(drawing, "    the target");
+            drawing.text(Text::new(at(next + 3.0, y), "the target", theme::TICK_PT, theme::INK));
         }
         if self.bin.len() > 2 && !self.bin_name.is_empty() {
             let room = (frame.width + 4.0) / crate::drawing::MM_PER_PT;
