@@ -45,8 +45,8 @@ impl Neighbourhood {
         plot.ground(&mut drawing);
         drawing.window(frame, |d| {
             self.paint_bin(&plot, d);
-            paint_locus(&plot, d);
             self.paint_circles(&plot, d);
+            paint_locus(&plot, d);
             self.paint_whites(&plot, d);
         });
         self.words(frame, &mut drawing);
@@ -71,7 +71,7 @@ impl Neighbourhood {
     fn paint_bin(&self, plot: &Plot, drawing: &mut Drawing) {
         if self.bin.len() > 2 {
             let outline = Path::through(self.bin.iter().map(|p| plot.place(p.u, p.v))).close();
-            drawing.shape(outline, theme::PAPER, Pen::solid(theme::ACCENT, 0.35));
+            drawing.stroke(outline, Pen::solid(theme::ACCENT, 0.45));
         }
     }
 
