@@ -5,7 +5,7 @@
 //! ```
 //!
 //! Every number below is invented; only the kinds of curve (vibronic progression, skewed and split bells, bells over
-//! photon energy) and their usual widths are those of real emitters. The same program gives the same files.
+//! photon energy) and their usual widths are those of real emitters.
 
 use colour::shapes::{EnergyOrdinate, Shape};
 use device::sheet::{EqeModel, Sheet, VoltageModel};
@@ -94,7 +94,7 @@ fn cabin() -> Result<Project, Box<dyn Error>> {
     let corridor = WhiteSpec {
         cct_k: 4000.0,
         duv: 0.0,
-        region: Region::Quadrangle { nominal_k: 4000 },
+        region: Region::Circle { steps: 3.0 },
         limits: Limits { ra: Limit::at_least(80.0), r9: Limit::at_least(0.0), ..Limits::default() },
         maximise: Maximise::Efficacy,
         lumens: Some(600.0),

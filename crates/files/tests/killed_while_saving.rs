@@ -3,6 +3,8 @@
 //! Twenty rounds by default; `KILL_ROUNDS=1000 cargo test -p files --test killed_while_saving` for the long run. The
 //! instants come from a fixed sequence, though the machine's own timing adds to them.
 
+#![allow(clippy::unwrap_used, reason = "helpers of a test")]
+
 use files::journal::{Header, Journal, read_journal};
 use files::project_file::{open_project, project_text};
 use files::save::{backup_path, save};
