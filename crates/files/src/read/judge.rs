@@ -276,19 +276,12 @@ fn saturated(nm: &[f64], values: &[f64]) -> Option<String> {
     if run < if full_scale { 2 } else { 4 } {
         return None;
     }
-    // Rounding makes plateaus too, but then the next samples lie one rounding step lower.
-    let mut upper: Vec<f64> = values.iter().copied().filter(|&value| value > 0.5 * top).collect();
-    upper.sort_by(f64::total_cmp);
-    let step = upper
-        .windows(2)
-        .map(|pair| pair[1] - pair[0])
-        .filter(|&step| step > 1e-12 * top)
-        .fold(f64::INFINITY, f64::min);
+    // Rounding makes plateaus too; a parabola flat over four or more samples then falls by at most three rounding steps.
+    let step = rounding_step(values, top);
     let drop =
         |index: Option<usize>| index.and_then(|index| values.get(index)).map_or(0.0, |value| top - value);
-    let (left, right) = (drop(from.checked_sub(1)), drop(Some(to)));
-    let steep =
-        left.max(right) > 0.002 * top && (step.is_infinite() || left.max(right) > 1.5 * step || run >= 12);
+    let fall = drop(from.checked_sub(1)).max(drop(Some(to)));
+    let steep = fall > (4.0 * step).max(0.002 * top);
     (full_scale || steep).then(|| {
         format!(
             "{run} samples by {}–{} nm stand at the very top: saturated?",
@@ -296,6 +289,16 @@ fn saturated(nm: &[f64], values: &[f64]) -> Option<String> {
             short(nm[to - 1])
         )
     })
+}
+
+/// The power of ten that all values above half of the largest, `top`, are multiples of; 0 below nine digits.
+fn rounding_step(values: &[f64], top: f64) -> f64 {
+    let leading = top.log10().floor() as i32;
+    let whole = |step: f64| {
+        let upper = values.iter().filter(|&&value| value > 0.5 * top);
+        upper.map(|value| value / step).all(|steps| (steps - steps.round()).abs() < 1e-3)
+    };
+    (0..=9).map(|digits| 10_f64.powi(leading - digits)).find(|&step| whole(step)).unwrap_or(0.0)
 }
 
 /// An end inside 380–780 nm where the spectrum has not died away.
@@ -437,6 +440,7 @@ mod tests {
         spiked[250] = 0.8;
         says(&spiked, "spike");
         says(&clean.iter().map(|value| value.min(0.6)).collect::<Vec<_>>(), "saturated");
+        says(&clean.iter().map(|value| value.min(0.95)).collect::<Vec<_>>(), "saturated");
         says(&[3.0; 401], "nearly the same");
         let short: Vec<f64> = nm[..170].to_vec();
         assert!(found(&short, &clean[..170]).warnings[0].contains("cut off"));

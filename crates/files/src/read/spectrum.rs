@@ -86,8 +86,14 @@ pub(super) fn make(
         AxisSource::Steps { .. } => AxisUnit::Nm,
     };
     let mut open = about.open;
-    let meaning =
-        ordinate(draft, &hint, own.map_or("", |one| one.name.as_str()), axis_unit, answers, &mut open);
+    let meaning = ordinate(
+        draft,
+        &hint,
+        if own.is_some_and(|one| !one.name.is_empty()) { about.name } else { "" },
+        axis_unit,
+        answers,
+        &mut open,
+    );
     finish_spectrum(
         draft,
         samples,
