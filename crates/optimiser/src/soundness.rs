@@ -233,11 +233,7 @@ fn soundness_no_blend_beats_the_bound_of_its_box() {
             tally.tightest[k].iter().map(|s| format!("{s:.1e}")).collect::<Vec<_>>().join(" ")
         ));
     }
-    // The report of the full run is the point of asking for it.
-    #[expect(clippy::print_stdout, reason = "shown with --nocapture only")]
-    {
-        println!("{report}");
-    }
+    println!("{report}");
     assert!(tally.path < 1e-8, "{report}");
     for k in 0..4 {
         assert!(tally.worst[k] < ROUNDING, "a blend beats its bound\n{report}");
