@@ -3,7 +3,9 @@
 use crate::ces::{CesForms, CesModels, CesWants, CesWork, delta_of, rf_of};
 use crate::models::Model;
 use crate::problem::{Metric, Objective, Problem, Range};
-use crate::space::{NoSpace, Space, SpaceInput, WattRow};
+use crate::region_proof::Slice;
+use crate::space::{NoSpace, Space, SpaceInput, WattRow, WhiteWanted};
+use crate::tcs::MovingTcs;
 use crate::tcs::{TcsForms, TcsModels, xyz2};
 use colour::{PHOTOPIC_EFFICACY_LM_PER_W as KM, Reference, Tensor, Uv};
 
@@ -46,6 +48,10 @@ pub(crate) struct Ask {
     /// Emitters in all.
     pub(crate) all: usize,
     pub(crate) tcs: Option<TcsForms>,
+    /// In place of `tcs` where the white may move.
+    pub(crate) moving: Option<MovingTcs>,
+    /// How far −ΔE′ may shift with the reference inside a slice of a region.
+    pub(crate) rf_slack: f64,
     pub(crate) ces: Option<CesForms>,
     pub(crate) wants: CesWants,
     /// Upper limits on Ra or R9 exist.
@@ -149,9 +155,40 @@ impl Ask {
             return Err(NoSpace::White);
         }
         let rows = if limits { watt_rows(problem, &used) } else { Vec::new() };
-        let space =
-            Space::new(&SpaceInput { xyz: &xyz, white: white_of(white), bounds: &bounds, rows: &rows })?;
+        let space = Space::new(&SpaceInput {
+            xyz: &xyz,
+            white: WhiteWanted::Exact(white_of(white)),
+            bounds: &bounds,
+            rows: &rows,
+        })?;
         Ok(Ask::over(problem, &used, &tensors, space, reference, wanted, limits))
+    }
+
+    /// Compiles a problem for whites inside a slice of a region. Limits on Rg are left out: its hue bins change with the reference.
+    pub(crate) fn within(problem: &Problem, slice: &Slice, wanted: Wanted) -> Result<Ask, NoSpace> {
+        let (used, tensors, bounds) = participants(problem);
+        let xyz: Vec<[f64; 3]> = tensors.iter().map(xyz2).collect();
+        if used.is_empty() {
+            return Err(NoSpace::White);
+        }
+        let rows = watt_rows(problem, &used);
+        let space = Space::new(&SpaceInput {
+            xyz: &xyz,
+            white: WhiteWanted::Within(&slice.sides, slice.most),
+            bounds: &bounds,
+            rows: &rows,
+        })?;
+        if space.d == 0 {
+            return Err(NoSpace::White);
+        }
+        let mut bare = problem.clone();
+        bare.limits.rg = Range::OPEN;
+        let mut ask = Ask::over(&bare, &used, &tensors, space, &slice.middle, wanted, true);
+        if ask.tcs.take().is_some() {
+            ask.moving = Some(MovingTcs::new(&tensors, &ask.space, slice));
+        }
+        ask.rf_slack = slice.rf_slack;
+        Ok(ask)
     }
 
     fn over(
@@ -206,6 +243,8 @@ impl Ask {
             all: problem.emitters.len(),
             space,
             tcs,
+            moving: None,
+            rf_slack: 0.0,
             ces,
             goals,
             aim,
@@ -274,6 +313,9 @@ impl At<'_> {
         if let Some(tcs) = &self.ask.tcs {
             tcs.point::<F>(self.t, &mut self.work.tcs);
         }
+        if let Some(moving) = &self.ask.moving {
+            moving.point::<F>(self.t, &mut self.work.tcs);
+        }
         if let Some(ces) = &self.ask.ces {
             ces.point::<F>(self.t, self.ask.wants.rg, &mut self.work.lanes, &mut self.work.ces);
         }
@@ -306,8 +348,13 @@ impl OverBox<'_> {
                 tcs.around::<F, true, false>(self.centre, self.radius, &mut w.tcs);
             }
         }
+        if let Some(moving) = &a.moving {
+            moving.around::<F>(self.centre, self.radius, &mut w.tcs);
+        }
         if let Some(ces) = &a.ces {
             ces.around::<F, true>(self.centre, self.radius, a.wants, &mut w.lanes, &mut w.ces);
+            w.ces.rf.upper += a.rf_slack;
+            w.ces.rf.lower -= a.rf_slack;
         }
     }
 }

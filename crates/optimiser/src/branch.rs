@@ -31,6 +31,8 @@ pub(crate) struct Effort {
     pub(crate) gap: f64,
     /// A value found elsewhere that has to be beaten.
     pub(crate) floor: f64,
+    /// Look for better blends where the relaxation points.
+    pub(crate) hints: bool,
 }
 
 /// What the proof found.
@@ -328,7 +330,13 @@ pub(crate) fn prove(ask: &Ask, best: Option<Local>, effort: Effort, control: &Co
                 batch.iter().map(|n| examine(ask, n, beat, true, &mut own)).collect()
             };
         // A better blend may show up where the relaxation points.
-        let tries = if batches <= 8 || batches.is_multiple_of(8) { 2 } else { 0 };
+        let tries = if !effort.hints {
+            0
+        } else if batches <= 8 || batches.is_multiple_of(8) {
+            2
+        } else {
+            0
+        };
         for r in results.iter().flatten().filter(|r| !r.hint.is_empty()).take(tries) {
             let found = search(ask, false, &r.hint, &mut own.work);
             if found.short <= MET && best.as_ref().is_none_or(|b| found.objective > b.objective) {

@@ -275,7 +275,8 @@ pub fn choose(problem: &Problem, count: usize, control: &Control<'_>) -> Result<
     let first: Vec<Tried> = sample
         .par_iter()
         .map_init(BoxWork::default, |w, &bits| {
-            let effort = Effort { boxes: 0, until: plan.until, gap: GOAL_GAP, floor: f64::NEG_INFINITY };
+            let effort =
+                Effort { boxes: 0, until: plan.until, gap: GOAL_GAP, floor: f64::NEG_INFINITY, hints: true };
             chooser.attempt(&unpack(bits), f64::NEG_INFINITY, effort, 1, control, w)
         })
         .collect();
@@ -295,8 +296,13 @@ pub fn choose(problem: &Problem, count: usize, control: &Control<'_>) -> Result<
         }
         let end = (at + CHUNK).min(list.len());
         let chunk: Vec<u64> = list[at..end].iter().take_while(|l| l.0 > beat).map(|l| l.1).collect();
-        let effort =
-            Effort { boxes: state.boxes_left, until: plan.until, gap: GOAL_GAP, floor: state.best_value() };
+        let effort = Effort {
+            boxes: state.boxes_left,
+            until: plan.until,
+            gap: GOAL_GAP,
+            floor: state.best_value(),
+            hints: true,
+        };
         let tried: Vec<Tried> = chunk
             .par_iter()
             .with_min_len(4)
@@ -387,7 +393,8 @@ impl<'a> State<'a> {
 
     /// Adds the best emitter at a time, then swaps one for another while that helps.
     fn swap(&mut self, chooser: &Chooser<'_>, triples: &Triples, k: usize, m: usize, control: &Control<'_>) {
-        let effort = Effort { boxes: 0, until: self.until, gap: GOAL_GAP, floor: f64::NEG_INFINITY };
+        let effort =
+            Effort { boxes: 0, until: self.until, gap: GOAL_GAP, floor: f64::NEG_INFINITY, hints: true };
         let rank = |t: &Tried| match (&t.best, &t.short) {
             (Some(b), _) => (1, b.objective),
             (None, Some((s, _))) => (0, -s),
@@ -562,7 +569,8 @@ fn region_choice(
         .collect::<Vec<_>>()
         .par_iter()
         .map_init(BoxWork::default, |w, &&(_, bits)| {
-            let effort = Effort { boxes: 0, until: None, gap: GOAL_GAP, floor: f64::NEG_INFINITY };
+            let effort =
+                Effort { boxes: 0, until: None, gap: GOAL_GAP, floor: f64::NEG_INFINITY, hints: true };
             let t = chooser.attempt(&unpack(bits), f64::NEG_INFINITY, effort, 1, control, w);
             match (t.best, t.short) {
                 (Some(b), _) => (1, b.objective, bits),

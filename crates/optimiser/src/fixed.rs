@@ -42,7 +42,7 @@ impl Plan {
     }
 
     fn effort(&self) -> Effort {
-        Effort { boxes: self.boxes, until: self.until, gap: self.gap, floor: f64::NEG_INFINITY }
+        Effort { boxes: self.boxes, until: self.until, gap: self.gap, floor: f64::NEG_INFINITY, hints: true }
     }
 }
 

@@ -25,6 +25,7 @@ mod problem;
 mod properties;
 mod quadratic;
 mod region;
+mod region_proof;
 mod simplex;
 mod solve;
 #[cfg(test)]

@@ -3,7 +3,7 @@
 use crate::answer::{Grade, Outcome};
 use crate::fixed::{shortfalls, values_of};
 use crate::local::Dice;
-use crate::problem::{Control, Metric, Objective, Problem, Range};
+use crate::problem::{Control, Metric, Objective, Problem, Range, circle};
 use crate::solve::solve;
 use crate::soundness::random_problem;
 use colour::tensor::TensorSet;
@@ -222,4 +222,58 @@ fn limits_that_exclude_each_other_are_explained_with_a_way_out_that_works() {
         assert_eq!(why.relaxations.len(), 2, "{}", why.explanation);
     }
     assert!(tried >= 8, "{tried}");
+}
+
+#[test]
+fn a_region_gives_at_least_what_its_middle_gives_and_its_bound_holds() {
+    let (mut proven, mut seen) = (0, 0);
+    for seed in 0..16 {
+        let mut p = random_problem(seed);
+        p.limits.ra = Range::at_least(70.0);
+        let Outcome::Optimal(middle) = solve(&p, &Control::none()).unwrap() else { continue };
+        let centre = uv_at(p.target.cct_k, p.target.duv).uv_prime();
+        for round in [true, false] {
+            p.region = if round {
+                circle(centre, 0.0022)
+            } else {
+                crate::problem::Region::Box { cct_k: 100.0, duv: 0.002 }
+            };
+            let outcome = solve(&p, &Control::none()).unwrap();
+            let s = outcome.solution().expect("the middle has a blend");
+            assert!(
+                s.objective >= middle.objective - 1e-6,
+                "seed {seed}: {} {}",
+                s.objective,
+                middle.objective
+            );
+            let uv = p.emitters.blend(&s.shares).xyz(Observer::Cie1931).uv();
+            if round {
+                assert!(uv.uv_prime().distance(centre) <= 0.0022);
+            } else {
+                let c = colour::locus::cct_duv(uv).unwrap();
+                assert!((c.cct_k - p.target.cct_k).abs() <= 100.0 && (c.duv - p.target.duv).abs() <= 0.002);
+            }
+            assert!(shortfalls(&p, &s.values, 1e-6).is_empty());
+            let upper = s.upper_bound.unwrap();
+            assert!(upper >= s.objective && upper >= middle.objective);
+            proven += usize::from(s.grade == Grade::Proven);
+            seen += 1;
+        }
+    }
+    assert!(seen >= 16 && proven * 10 >= seen * 9, "{proven} of {seen} proven");
+}
+
+#[test]
+fn a_region_without_a_blend_is_proven_empty() {
+    let mut p = random_problem(11);
+    p.maximise = Objective::Ra;
+    let best = solve(&p, &Control::none()).unwrap().solution().unwrap().objective;
+    p.maximise = Objective::Ler;
+    p.region = crate::problem::Region::Box { cct_k: 20.0, duv: 0.0005 };
+    p.limits.ra = Range::at_least((best + 8.0).min(99.9));
+    let Outcome::Infeasible(why) = solve(&p, &Control::none()).unwrap() else {
+        panic!("Ra {best} plus 8 was reached")
+    };
+    assert!(why.proven, "{}", why.explanation);
+    assert!(!why.nearest.shortfalls.is_empty() && !why.reachable.is_empty());
 }

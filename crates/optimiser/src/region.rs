@@ -1,13 +1,15 @@
 //! Whites that may move inside a region.
 //!
 //! The region is taken in pieces on which the CIE 13.3 reference does not change its kind (it does at 5000 K). In each piece a grid of whites is solved exactly,
-//! then the best of them are refined by a compass search that slides along the edges, each white solved from the blend before.
+//! then the best of them are refined by a compass search that slides along the edges, each white solved from the blend before. Then
+//! [`crate::region_proof`] bounds the whole region.
 
 use crate::answer::{Binding, Outcome, Solution};
 use crate::fixed::{Plan, finish, solve_at};
 use crate::gamut::inside;
 use crate::infeasible::{explain, outside};
 use crate::problem::{Control, Problem, Region};
+use crate::region_proof::bound_region;
 use crate::space::NoSpace;
 use colour::locus::{cct_duv, uv_at};
 use colour::{Reference, Uv};
@@ -353,6 +355,12 @@ pub(crate) fn solve_region(problem: &Problem, plan: Plan, control: &Control<'_>)
         );
         let mut why = explain(problem, place.uv, &reference, &found, plan, control);
         why.proven = false;
+        if plan.boxes > 0 {
+            let proof = bound_region(problem, &pieces, f64::NEG_INFINITY, plan, control);
+            why.proven = proof.upper == f64::NEG_INFINITY;
+            why.boxes += proof.boxes;
+            why.stopped_by = proof.stop;
+        }
         return Outcome::Infeasible(why);
     }
     // a last full search at the white found
@@ -372,6 +380,10 @@ pub(crate) fn solve_region(problem: &Problem, plan: Plan, control: &Control<'_>)
     }
     .unwrap_or(mark.shares);
     let mut solution: Solution = finish(problem, shares, f64::INFINITY, 0, None, &reference);
+    if plan.boxes > 0 {
+        let proof = bound_region(problem, &pieces, solution.objective, plan, control);
+        solution = finish(problem, solution.shares, proof.upper, proof.boxes, proof.stop, &reference);
+    }
     if on_edge(piece, mark.x) {
         solution.held_by.push(Binding::Region);
     }

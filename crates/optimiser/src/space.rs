@@ -28,7 +28,7 @@ pub(crate) struct Space {
     pub(crate) n: usize,
     /// Free directions.
     pub(crate) d: usize,
-    /// The white: X, 1, Z.
+    /// The white: X, 1, Z (the greatest of them where the white may move).
     pub(crate) white: [f64; 3],
     /// A point of the polytope (a mean of corners).
     pub(crate) origin: Vec<f64>,
@@ -52,12 +52,21 @@ pub(crate) enum NoSpace {
     Rows,
 }
 
+/// The white of a space.
+#[derive(Clone, Copy)]
+pub(crate) enum WhiteWanted<'a> {
+    /// Exactly X, 1, Z.
+    Exact([f64; 3]),
+    /// Anywhere inside half-planes g·(u, v) ≤ c of CIE 1960; the second is the greatest X, 1, Z in there.
+    Within(&'a [([f64; 2], f64)], [f64; 3]),
+}
+
 /// Equalities and bounds handed in.
 pub(crate) struct SpaceInput<'a> {
     /// 2° XYZ of each emitter at unit power.
     pub(crate) xyz: &'a [[f64; 3]],
-    /// X/Y and Z/Y wanted.
-    pub(crate) white: [f64; 3],
+    /// The white wanted.
+    pub(crate) white: WhiteWanted<'a>,
     /// Share bounds of each emitter.
     pub(crate) bounds: &'a [(f64, f64)],
     /// Further rows.
@@ -92,9 +101,13 @@ impl Space {
                 consistent = false;
             }
         };
-        let w = input.white;
-        for k in [1, 0, 2] {
-            equality(input.xyz.iter().map(|x| x[k]).collect(), w[k]);
+        let w = match input.white {
+            WhiteWanted::Exact(w) | WhiteWanted::Within(_, w) => w,
+        };
+        equality(input.xyz.iter().map(|x| x[1]).collect(), w[1]);
+        if let WhiteWanted::Exact(_) = input.white {
+            equality(input.xyz.iter().map(|x| x[0]).collect(), w[0]);
+            equality(input.xyz.iter().map(|x| x[2]).collect(), w[2]);
         }
         for i in 0..n {
             let (lo, hi) = input.bounds[i];
@@ -186,6 +199,15 @@ impl Space {
         for i in 0..n {
             if input.bounds[i].1 - input.bounds[i].0 <= LOCKED {
                 rows.push(WattRow { c: (0..n).map(|j| -f64::from(i == j)).collect(), b: 1e-9 });
+            }
+        }
+        if let WhiteWanted::Within(sides, _) = input.white {
+            for (g, c) in sides {
+                // g·(4X, 6Y) − c (X + 15Y + 3Z) ≤ 0
+                let of = |x: &[f64; 3]| {
+                    4.0 * g[0] * x[0] + 6.0 * g[1] * x[1] - c * (x[0] + 15.0 * x[1] + 3.0 * x[2])
+                };
+                rows.push(WattRow { c: input.xyz.iter().map(of).collect(), b: 0.0 });
             }
         }
         let white_rows = rows.len();

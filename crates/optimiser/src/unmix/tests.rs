@@ -167,7 +167,7 @@ fn other_sampling_of_the_measurement_changes_nothing() {
     let emitters = set();
     let shares = [0.12, 0.05, 0.2, 0.23, 0.15, 0.2, 0.05];
     let clean = blend(&emitters, &shares);
-    let keep = |k: &usize| k % 5 == 0 && (20..=340).contains(k);
+    let keep = |k: &usize| k.is_multiple_of(5) && (20..=340).contains(k);
     let nm: Vec<f64> = (0..401).filter(keep).map(|k| grid()[k]).collect();
     let power: Vec<f64> = (0..401).filter(keep).map(|k| clean[k]).collect();
     let found = unmix(&Spectrum::new(nm, power).unwrap(), &emitters, Freedom::default()).unwrap();
