@@ -210,7 +210,14 @@ fn add_set(project: &mut Project, name: &str, emitters: &[&str], white: &WhiteSp
         .collect();
     let id = SetId(project.take_id());
     let white = white.clone();
-    project.sets.push(EmitterSet { id, name: name.to_owned(), note: String::new(), members, white });
+    project.sets.push(EmitterSet {
+        id,
+        name: name.to_owned(),
+        note: String::new(),
+        members,
+        white,
+        recipes: Vec::new(),
+    });
 }
 
 /// Every set with the shares that its own spec asks for.

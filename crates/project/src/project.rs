@@ -284,8 +284,14 @@ mod tests {
         project.emitters = vec![emitter(1), emitter(2)];
         let members = vec![Member { share: 1.0, ..Member::new(EmitterId(1)) }, Member::new(EmitterId(2))];
         let white = WhiteSpec::default();
-        project.sets =
-            vec![EmitterSet { id: SetId(3), name: "A".into(), note: String::new(), members, white }];
+        project.sets = vec![EmitterSet {
+            id: SetId(3),
+            name: "A".into(),
+            note: String::new(),
+            members,
+            white,
+            recipes: Vec::new(),
+        }];
         project
     }
 

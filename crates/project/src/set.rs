@@ -1,6 +1,6 @@
 //! Emitter sets: which emitters, with what freedom, for which white.
 
-use crate::{EmitterId, WhiteSpec};
+use crate::{EmitterId, RecipePlan, WhiteSpec};
 use serde::{Deserialize, Serialize};
 
 /// The identity of a set inside one project; never reused.
@@ -69,6 +69,9 @@ pub struct EmitterSet {
     pub members: Vec<Member>,
     /// What the blend must meet.
     pub white: WhiteSpec,
+    /// Ways of building the blend, in display order.
+    #[serde(default)]
+    pub recipes: Vec<RecipePlan>,
 }
 
 impl EmitterSet {

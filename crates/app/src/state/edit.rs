@@ -4,8 +4,8 @@
 //! be written to disk and played again. Making one returns the edit that takes it back.
 
 use project::{
-    CorrectionStep, Emitter, EmitterId, EmitterSet, Geometry, Member, Mounting, Origin, Project, SetId,
-    ShareKind, WhiteSpec,
+    CorrectionStep, Emitter, EmitterId, EmitterSet, Geometry, Member, Mounting, Origin, Project, RecipePlan,
+    SetId, ShareKind, WhiteSpec,
 };
 use serde::{Deserialize, Serialize};
 
@@ -213,6 +213,14 @@ pub enum Edit {
         members: Vec<Member>,
     },
 
+    /// Replace a set's recipe plans: build forms, settings, numbers set by hand, locks.
+    Recipes {
+        /// Which set.
+        set: SetId,
+        /// The plans, in display order.
+        recipes: Vec<RecipePlan>,
+    },
+
     /// Several edits that stand or fall together.
     Together {
         /// What they do, in the user's words.
@@ -367,6 +375,7 @@ impl Edit {
             Self::AddMember { .. } => "add emitter to set",
             Self::RemoveMember { .. } => "take emitter out of set",
             Self::Members { .. } => "change set",
+            Self::Recipes { .. } => "change recipe",
             Self::Together { label, .. } => return label.clone(),
         };
         text.to_owned()
@@ -380,6 +389,7 @@ impl Edit {
             | (Self::ShareKind(_), Self::ShareKind(_)) => true,
             (Self::Shares { set: a, .. }, Self::Shares { set: b, .. })
             | (Self::White { set: a, .. }, Self::White { set: b, .. })
+            | (Self::Recipes { set: a, .. }, Self::Recipes { set: b, .. })
             | (Self::SetName { set: a, .. }, Self::SetName { set: b, .. })
             | (Self::SetNote { set: a, .. }, Self::SetNote { set: b, .. }) => a == b,
             (Self::WallPlug { emitter: a, .. }, Self::WallPlug { emitter: b, .. })

@@ -301,6 +301,13 @@ fn blend(project: &mut Project, edit: Edit) -> Result<Edit, EditError> {
             let row = set_mut(project, set)?;
             Ok(Edit::Members { set, members: mem::replace(&mut row.members, members) })
         }
+        Edit::Recipes { set, recipes } => {
+            for plan in &recipes {
+                named(&plan.name)?;
+            }
+            let row = set_mut(project, set)?;
+            Ok(Edit::Recipes { set, recipes: mem::replace(&mut row.recipes, recipes) })
+        }
         _ => unreachable!("`make` sends each edit to the function that knows it"),
     }
 }

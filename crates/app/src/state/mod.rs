@@ -244,7 +244,14 @@ impl State {
     pub fn adding_set(&self, name: impl Into<String>) -> Edit {
         let id = SetId(self.unused_id());
         let white = self.current_set().map(|s| s.white.clone()).unwrap_or_default();
-        let set = EmitterSet { id, name: name.into(), note: String::new(), members: Vec::new(), white };
+        let set = EmitterSet {
+            id,
+            name: name.into(),
+            note: String::new(),
+            members: Vec::new(),
+            white,
+            recipes: Vec::new(),
+        };
         inserting(usize::MAX, set)
     }
 

@@ -42,6 +42,7 @@ fn start() -> State {
         note: String::new(),
         members,
         white: WhiteSpec::default(),
+        recipes: Vec::new(),
     });
     project.next_id = 11;
     State::new(project, None).unwrap()

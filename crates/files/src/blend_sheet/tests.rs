@@ -58,7 +58,8 @@ pub(crate) fn demo() -> Project {
     white.limits.r9 = Limit::at_least(60.0);
     white.limits.efficacy = Limit::at_least(80.0);
     let note = "as first mixed".into();
-    project.sets = vec![EmitterSet { id: SetId(9), name: "Set A".into(), note, members, white }];
+    project.sets =
+        vec![EmitterSet { id: SetId(9), name: "Set A".into(), note, members, white, recipes: Vec::new() }];
     project.current_set = Some(SetId(9));
     project.next_id = 10;
     project

@@ -44,8 +44,14 @@ fn four_thousand() -> Project {
         lumens: Some(336.9),
         ..WhiteSpec::default()
     };
-    project.sets =
-        vec![project::EmitterSet { id: SetId(9), name: "A".into(), note: String::new(), members, white }];
+    project.sets = vec![project::EmitterSet {
+        id: SetId(9),
+        name: "A".into(),
+        note: String::new(),
+        members,
+        white,
+        recipes: Vec::new(),
+    }];
     project
 }
 
