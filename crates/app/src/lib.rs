@@ -1,6 +1,7 @@
 //! Whitesmith: the window, and the same work without one.
 //!
 //! * [`headless`]: one file a command; arguments in, documented JSON or a table out.
+//! * [`making`]: a blend as a device: recipes with targets, bands and pictures.
 //! * [`solving`]: a white spec and its emitters as a problem for the optimiser.
 //! * [`state`]: the project, every change to it as an edit with its inverse, and what is derived from it.
 //! * [`jobs`]: work too long for a frame, in the background.
@@ -9,6 +10,7 @@
 
 pub mod headless;
 pub mod jobs;
+pub mod making;
 pub mod render;
 pub mod solving;
 pub mod state;

@@ -21,6 +21,9 @@ pub struct RecipePlan {
     /// The build form, its settings, down-conversion and area.
     #[serde(default)]
     pub build: Build,
+    /// Thickness in nm of one unit of an emitter, for the section of a stack or zone; drawn, never computed with.
+    #[serde(default)]
+    pub thickness_nm: Vec<(EmitterId, f64)>,
     /// Working temperature of the emitters, °C; `None` leaves the sheets as they were measured.
     #[serde(default)]
     pub temperature_c: Option<f64>,
@@ -40,6 +43,7 @@ impl RecipePlan {
             note: String::new(),
             emitters,
             build,
+            thickness_nm: Vec::new(),
             temperature_c: None,
             made: None,
             locked: Vec::new(),

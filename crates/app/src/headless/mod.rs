@@ -20,6 +20,8 @@ mod output;
 mod packages;
 mod prices;
 mod read;
+pub(crate) mod recipe;
+mod report;
 mod solve;
 mod table;
 mod usage;
@@ -38,6 +40,8 @@ pub use missing::MissingArgs;
 pub use packages::PackagesArgs;
 pub use prices::PricesArgs;
 pub use read::ReadArgs;
+pub use recipe::RecipeArgs;
+pub use report::ReportArgs;
 pub use solve::SolveArgs;
 pub use table::TableArgs;
 
@@ -85,6 +89,10 @@ pub enum Command {
     Drop(Box<DropArgs>),
     /// See [`PricesArgs`].
     Prices(Box<PricesArgs>),
+    /// See [`RecipeArgs`].
+    Recipe(RecipeArgs),
+    /// See [`ReportArgs`].
+    Report(ReportArgs),
     /// See [`CorrectArgs`].
     Correct(CorrectArgs),
 }
@@ -114,6 +122,8 @@ fn perform(command: &Command) -> Exit {
         Command::Missing(args) => missing::run(args),
         Command::Drop(args) => drop::run(args),
         Command::Prices(args) => prices::run(args),
+        Command::Recipe(args) => recipe::run(args),
+        Command::Report(args) => report::run(args),
         Command::Correct(args) => correct::run(args),
     }
 }

@@ -94,7 +94,9 @@ fn sentence(efficacy: f64, bound: Option<f64>, gap: Option<f64>, grade: Grade) -
              (gap {:.1} %)",
             100.0 * gap
         ),
-        _ => format!("{efficacy:.2} lm/W, the best found at these working currents; nothing is proven over others"),
+        _ => format!(
+            "{efficacy:.2} lm/W, the best found at these working currents; nothing is proven over others"
+        ),
     }
 }
 

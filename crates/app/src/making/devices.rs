@@ -29,7 +29,9 @@ impl Devices {
     /// An emitter that has left the project; samples without light; a set without a share.
     pub fn of(project: &Project, set: &EmitterSet, plan: &RecipePlan) -> Result<Self, MakingError> {
         let mut ids = plan.emitters.clone();
-        ids.extend(set.members.iter().filter(|m| m.on).map(|m| m.emitter).filter(|id| !plan.emitters.contains(id)));
+        ids.extend(
+            set.members.iter().filter(|m| m.on).map(|m| m.emitter).filter(|id| !plan.emitters.contains(id)),
+        );
         let mut out = Self {
             ids,
             emitters: Vec::new(),
@@ -40,9 +42,8 @@ impl Devices {
         };
         let mut tensors = Vec::new();
         for &id in &out.ids {
-            let emitter = project
-                .emitter(id)
-                .ok_or_else(|| MakingError::EmitterGone { plan: plan.name.clone() })?;
+            let emitter =
+                project.emitter(id).ok_or_else(|| MakingError::EmitterGone { plan: plan.name.clone() })?;
             let mut grid = emitter.spectrum()?.on_colour_grid();
             let mut sheet = emitter.sheet.clone();
             sheet.wall_plug = sheet.wall_plug.or(emitter.wall_plug);

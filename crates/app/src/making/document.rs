@@ -3,7 +3,8 @@
 use super::{Making, Number};
 use colour::Measurement;
 use device::Recipe;
-use device::build::Sensitivity;
+use device::sensitivity::Sensitivity;
+use files::report::RecipeRow;
 use project::{Metric, Project, SourceFile, WhiteSpec};
 use serde::Serialize;
 
@@ -166,56 +167,31 @@ impl RecipeDocument {
         Ok(text)
     }
 
-    /// The document as CSV: one section after another, cells safe for spreadsheets.
+    /// The document as CSV: one row a number of the line, then shares, predictions, assumptions and sources; cells
+    /// safe for spreadsheets, numbers in full, read back unchanged by [`files::report::recipe_csv::read`].
     ///
     /// # Errors
     /// When the table cannot be written.
-    pub fn to_csv(&self) -> Result<String, csv::Error> {
-        let mut out = files::cells::writer(Vec::new());
-        let number = |value: Option<f64>| value.map_or_else(String::new, |value| value.to_string());
-        let mut row = |cells: &[&str]| files::cells::write_row(&mut out, cells);
-        row(&["Recipe", &self.recipe, "Set", &self.set, "Project", &self.project, "Program", &self.program])?;
-        row(&["Part", "Quantity", "Unit", "Value", "Target", "Allowed low", "Allowed high", "Low alone", "High alone"])?;
-        for line in &self.numbers {
-            row(&[
-                if line.part.is_empty() { "whole device" } else { &line.part },
-                &line.quantity,
-                line.unit,
-                &line.value.to_string(),
-                &number(line.target),
-                &number(line.low),
-                &number(line.high),
-                &number(line.low_alone),
-                &number(line.high_alone),
-            ])?;
-        }
-        row(&[
-            "Emitter",
-            "Share of radiant power",
-            "Share of luminous flux",
-            "Share of photons",
-            "Mean wavelength (nm)",
-            "EQE",
-            "Current density (mA/cm\u{b2})",
-            "Voltage (V)",
-            "Area share",
-        ])?;
+    pub fn to_csv(&self) -> Result<String, files::cells::CsvError> {
+        let row = |part: &str, quantity: &str, target: Option<f64>, unit: &str, remark: &str| RecipeRow {
+            part: part.to_owned(),
+            quantity: quantity.to_owned(),
+            target,
+            unit: unit.to_owned(),
+            remark: remark.to_owned(),
+            ..RecipeRow::default()
+        };
+        let mut rows = self.rows();
         for e in &self.device.emitters {
-            row(&[
-                &e.name,
-                &e.share_radiant.to_string(),
-                &e.share_luminous.to_string(),
-                &e.share_photon.to_string(),
-                &e.mean_wavelength_nm.to_string(),
-                &number(e.eqe),
-                &number(e.current_density_ma_per_cm2),
-                &number(e.voltage_v),
-                &number(e.area_share),
-            ])?;
+            for (kind, share) in [
+                ("share of radiant power", e.share_radiant),
+                ("share of luminous flux", e.share_luminous),
+                ("share of photons", e.share_photon),
+            ] {
+                rows.push(row(&e.name, kind, Some(share), "", "predicted"));
+            }
         }
-        row(&["Predicted", "Value", "Unit"])?;
-        let p = &self.predicted;
-        let d = &self.device;
+        let (p, d) = (&self.predicted, &self.device);
         for (name, value, unit) in [
             ("CCT", p.cct_k, "K"),
             ("Duv", p.duv, ""),
@@ -225,30 +201,61 @@ impl RecipeDocument {
             ("R9", p.r9(), ""),
             ("Rf", p.rf, ""),
             ("Rg", p.rg, ""),
-            ("Luminance", d.luminance_cd_per_m2, "cd/m\u{b2}"),
-            ("Luminous flux", d.luminous_flux_lm, "lm"),
-            ("Luminous efficacy", d.efficacy_lm_per_w, "lm/W"),
-            ("Electrical power", d.electrical_power_w, "W"),
+            ("luminance", d.luminance_cd_per_m2, "cd/m\u{b2}"),
+            ("luminous flux", d.luminous_flux_lm, "lm"),
+            ("luminous efficacy", d.efficacy_lm_per_w, "lm/W"),
+            ("electrical power", d.electrical_power_w, "W"),
         ] {
-            row(&[name, &number(value), unit])?;
+            rows.push(row("", name, value.filter(|v| v.is_finite()), unit, "predicted"));
         }
-        for (title, sentences) in [
-            ("Assumption", &self.assumptions),
-            ("Untouched default", &self.untouched_defaults),
-            ("Missing", &self.missing),
-            ("Notice", &self.notices),
+        for (kind, sentences) in [
+            ("assumption", &self.assumptions),
+            ("untouched default", &self.untouched_defaults),
+            ("missing", &self.missing),
+            ("notice", &self.notices),
         ] {
-            for sentence in sentences {
-                row(&[title, sentence])?;
-            }
+            rows.extend(sentences.iter().map(|sentence| row("", kind, None, "", sentence)));
         }
         for line in &self.sources {
-            let (file, digest) =
-                line.source.as_ref().map_or(("", ""), |s| (s.name.as_str(), s.sha256.as_str()));
-            let kind = if line.invented { "invented" } else { "measured" };
-            row(&["Source", &line.emitter, kind, file, digest])?;
+            let remark = match (&line.source, line.invented) {
+                (Some(file), _) => format!("{}, SHA-256 {}", file.name, file.sha256),
+                (None, true) => "invented, never measured".to_owned(),
+                (None, false) => "typed in".to_owned(),
+            };
+            rows.push(row(&line.emitter, "source", None, "", &remark));
         }
-        let bytes = out.into_inner().map_err(|e| csv::Error::from(e.into_error()))?;
-        Ok(String::from_utf8_lossy(&bytes).into_owned())
+        rows.push(row("", "program", None, "", &self.program));
+        files::report::recipe_csv::write(&rows)
+    }
+
+    /// One row a number of the line.
+    pub fn rows(&self) -> Vec<RecipeRow> {
+        let runs = match &self.device.details {
+            Some(device::recipe::Details::SharedZone { calibration_runs, .. }) => calibration_runs.clone(),
+            _ => Vec::new(),
+        };
+        self.numbers
+            .iter()
+            .map(|line| {
+                let calibrated = matches!(
+                    line.key.map(|key| key.kind),
+                    Some(device::QuantityKind::Concentration | device::QuantityKind::Thickness)
+                );
+                let mut remark = String::new();
+                if line.target.is_some_and(|target| (target - line.value).abs() > 1e-9 * target.abs()) {
+                    remark = format!("set by hand to {}", files::report::number::significant(line.value, 5));
+                }
+                RecipeRow {
+                    part: line.part.clone(),
+                    quantity: line.quantity.clone(),
+                    target: line.target.or(Some(line.value)),
+                    allowed_low: line.low,
+                    allowed_high: line.high,
+                    unit: line.unit.to_owned(),
+                    calibration_runs: if calibrated { runs.clone() } else { Vec::new() },
+                    remark,
+                }
+            })
+            .collect()
     }
 }

@@ -4,6 +4,8 @@
 //! * [`devices`]: a plan's emitters as the device crate takes them.
 //! * [`numbers`]: every fabrication number in the line's units, with its allowed band.
 //! * [`best`]: the blend with the most lumens per electrical watt of the device itself.
+//! * [`picture`]: the device to scale.
+//! * [`report`]: a set and its recipe as a report.
 //! * [`document`]: a recipe as it leaves the program.
 //!
 //! Out of scope: the formulas of the build forms (crate `device`), drawing, files.
@@ -12,6 +14,8 @@ pub mod best;
 pub mod devices;
 pub mod document;
 pub mod numbers;
+pub mod picture;
+pub mod report;
 
 #[cfg(test)]
 mod tests;
@@ -24,8 +28,8 @@ use crate::state::derived::WhiteRegion;
 use colour::{Measurement, UvPrime, locus};
 use device::bands::Bands;
 use device::bring_back::WayBack;
-use device::build::Sensitivity;
 use device::light::uv_of_xyz;
+use device::sensitivity::Sensitivity;
 use device::{Build, BuildForm, DeviceError, Level, Made, Quantity, Recipe};
 use project::{EmitterId, EmitterSet, Geometry, Mounting, Origin, Project, RecipePlan, Region, SetId};
 
@@ -52,7 +56,9 @@ pub enum MakingError {
         number: usize,
     },
     /// The plan was made with an emitter that has left the project.
-    #[error("the recipe \u{201c}{plan}\u{201d} was made with an emitter that has left the project: choose its build form anew")]
+    #[error(
+        "the recipe \u{201c}{plan}\u{201d} was made with an emitter that has left the project: choose its build form anew"
+    )]
     EmitterGone {
         /// Name of the plan.
         plan: String,
@@ -181,8 +187,7 @@ pub fn make_plan(project: &Project, set: &EmitterSet, plan: &RecipePlan) -> Resu
             let mut recipe = build.predict(&devices.emitters, made)?;
             let aim = devices.white(&devices.shares);
             let here = recipe.u_prime.zip(recipe.v_prime);
-            recipe.delta_uv_prime =
-                here.zip(aim).map(|((u, v), aim)| UvPrime { u, v }.distance(aim));
+            recipe.delta_uv_prime = here.zip(aim).map(|((u, v), aim)| UvPrime { u, v }.distance(aim));
             if let Ok(target) = target {
                 recipe.assumptions.splice(0..0, extra(&target.assumptions, &recipe.assumptions));
             }
@@ -275,7 +280,8 @@ impl Making {
     pub fn made(&self) -> Result<&Made, MakingError> {
         self.recipe.made.as_ref().ok_or_else(|| {
             let reason = self.recipe.missing.first().cloned();
-            let reason = reason.unwrap_or_else(|| "the sheets say too little for fabrication numbers".to_owned());
+            let reason =
+                reason.unwrap_or_else(|| "the sheets say too little for fabrication numbers".to_owned());
             MakingError::Device(DeviceError::Unreachable { reason })
         })
     }
@@ -324,7 +330,8 @@ fn level(set: &EmitterSet, build: &mut Build, devices: &Devices, assumptions: &m
     match (white.luminance_cd_per_m2, white.lumens) {
         (luminance, Some(lumens)) if packages && build.area_m2.is_none() => {
             if luminance.is_some() {
-                assumptions.push("no board area is given: the lumens are met, the luminance is not".to_owned());
+                assumptions
+                    .push("no board area is given: the lumens are met, the luminance is not".to_owned());
             }
             Level::LuminousFlux(lumens)
         }
@@ -353,8 +360,7 @@ fn level(set: &EmitterSet, build: &mut Build, devices: &Devices, assumptions: &m
             ));
             if let Some(lumens) = lumens {
                 let factor = device::build::angular_factor(&devices.emitters, &devices.shares);
-                build.area_m2 =
-                    Some(lumens * factor / (std::f64::consts::PI * DEFAULT_LUMINANCE_CD_PER_M2));
+                build.area_m2 = Some(lumens * factor / (std::f64::consts::PI * DEFAULT_LUMINANCE_CD_PER_M2));
             }
             Level::Luminance(DEFAULT_LUMINANCE_CD_PER_M2)
         }
@@ -373,10 +379,7 @@ fn defaults(build: &Build) -> Vec<String> {
         device::FormSettings::SideBySide(form) => {
             say(
                 form.fill.is_none(),
-                format!(
-                    "fill factor {} (common practice: 0.6 to 0.9)",
-                    device::form::DEFAULT_STRIPE_FILL
-                ),
+                format!("fill factor {} (common practice: 0.6 to 0.9)", device::form::DEFAULT_STRIPE_FILL),
             );
             say(form.layout.is_none(), "no stripe layout: widths in \u{b5}m are not given".to_owned());
         }
@@ -409,8 +412,7 @@ fn defaults(build: &Build) -> Vec<String> {
 fn kinds(project: &Project, ids: &[EmitterId]) -> Vec<String> {
     let emitters: Vec<&project::Emitter> = ids.iter().filter_map(|id| project.emitter(*id)).collect();
     let named = |test: &dyn Fn(&project::Emitter) -> bool| -> Option<String> {
-        let names: Vec<&str> =
-            emitters.iter().filter(|e| test(e)).map(|e| e.name.as_str()).collect();
+        let names: Vec<&str> = emitters.iter().filter(|e| test(e)).map(|e| e.name.as_str()).collect();
         (!names.is_empty()).then(|| names.join(", "))
     };
     let mut out = Vec::new();

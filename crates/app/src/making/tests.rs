@@ -42,7 +42,11 @@ fn every_demo_recipe_states_what_physics_ties_together() {
                 (e.current_density_ma_per_cm2, e.eqe, e.radiant_exitance_w_per_m2)
             {
                 let expected = 10.0 * j * eqe * 1239.842 / e.mean_wavelength_nm;
-                assert!((m / expected - 1.0).abs() < 1e-5 || (m == 0.0 && expected == 0.0), "{place}, {}", e.name);
+                assert!(
+                    (m / expected - 1.0).abs() < 1e-5 || (m == 0.0 && expected == 0.0),
+                    "{place}, {}",
+                    e.name
+                );
             }
         }
     }
