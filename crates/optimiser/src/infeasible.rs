@@ -148,7 +148,7 @@ pub(crate) fn explain(
             (None, Some(_)) => try_sign(-1.0),
             _ => try_sign(1.0),
         };
-        if let Some(entry) = entry {
+        if let Some(entry) = entry.filter(|e| e.best.is_finite()) {
             // The entry is the end in the way: its greatest value below the range, or its least above it.
             let by = range.excess(entry.best);
             let (word, asked) = if by < 0.0 { ("the most", range.low) } else { ("the least", range.high) };

@@ -45,8 +45,8 @@ pub use frontier::{FrontierPoint, Levels, frontier, most};
 pub use missing::{Family, Missing, Proposal, Trial, missing};
 pub use packages::{MOST_VECTORS, PackageAnswer, PackageChoice, PackageError, packages};
 pub use problem::{
-    Budget, Control, DEFAULT_BOXES, Limits, LinearRow, Metric, Objective, Problem, ProblemError, ROUND_SIDES,
-    Range, Region, Target, circle, ellipse,
+    Budget, Control, DEFAULT_BOXES, Limits, LinearRow, MOST_EMITTERS, Metric, Objective, Problem,
+    ProblemError, ROUND_SIDES, Range, Region, Target, circle, ellipse,
 };
 pub use solve::solve;
 pub use table::{Table, table};

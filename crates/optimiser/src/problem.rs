@@ -259,6 +259,9 @@ impl Default for Budget {
 /// Boxes examined by default: about one second of two cores for a problem with an Rf limit.
 pub const DEFAULT_BOXES: u64 = 60_000;
 
+/// Most emitters of one problem.
+pub const MOST_EMITTERS: usize = 40;
+
 /// The whole question.
 #[derive(Clone)]
 pub struct Problem {
@@ -332,6 +335,9 @@ impl Problem {
         let n = self.emitters.len();
         if n == 0 {
             return Err(ProblemError::NoEmitters);
+        }
+        if n > MOST_EMITTERS {
+            return Err(ProblemError::TooManyEmitters { found: n });
         }
         for (what, len) in
             [("share bounds", self.bounds.len()), ("wall-plug efficiencies", self.wall_plug.len())]
@@ -410,6 +416,12 @@ pub enum ProblemError {
     /// No emitters.
     #[error("there is no emitter to blend")]
     NoEmitters,
+    /// More than [`MOST_EMITTERS`].
+    #[error("at most {MOST_EMITTERS} emitters can be blended, found {found}")]
+    TooManyEmitters {
+        /// Emitters given.
+        found: usize,
+    },
     /// A list has the wrong length.
     #[error("{what}: expected one for each of {expected} emitters, found {found}")]
     WrongLength {
@@ -495,5 +507,59 @@ impl Control<'_> {
     #[must_use]
     pub fn stop(&self) -> bool {
         self.cancelled.load(Ordering::Relaxed)
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use colour::Tensor;
+
+    fn flat(n: usize) -> Problem {
+        let set = TensorSet::new(&vec![Tensor::of_grid(&[1.0; 401]); n]);
+        Problem::new(set, Target { cct_k: 4000.0, duv: 0.0 })
+    }
+
+    #[test]
+    fn faults_of_a_question_are_named() {
+        assert_eq!(flat(0).check(), Err(ProblemError::NoEmitters));
+        assert_eq!(flat(41).check(), Err(ProblemError::TooManyEmitters { found: 41 }));
+        let mut p = flat(3);
+        p.maximise = Objective::Efficacy;
+        assert_eq!(p.check(), Err(ProblemError::WallPlugMissing));
+        p.wall_plug = vec![0.3, 0.0, 0.5];
+        assert_eq!(p.check(), Err(ProblemError::WallPlug { emitter: 1, value: 0.0 }));
+        let mut p = flat(3);
+        p.bounds = vec![(0.0, 1.0), (0.6, 0.5), (0.0, 1.0)];
+        assert!(p.check().unwrap_err().to_string().starts_with("emitter 2: expected share bounds"));
+        let mut p = flat(3);
+        p.limits.ra = Range::between(95.0, 90.0);
+        assert!(matches!(p.check(), Err(ProblemError::EmptyRange { metric: "Ra", .. })));
+        let mut p = flat(3);
+        p.target.duv = 0.06;
+        assert!(matches!(p.check(), Err(ProblemError::Target { .. })));
+        p.target.duv = f64::NAN;
+        assert!(matches!(p.check(), Err(ProblemError::Target { .. })));
+        let mut p = flat(3);
+        p.region = Region::Polygon(vec![UvPrime { u: 0.2, v: 0.5 }; 2]);
+        assert_eq!(p.check(), Err(ProblemError::Polygon { corners: 2 }));
+    }
+
+    #[test]
+    fn a_range_tells_how_far_outside_a_value_lies() {
+        let r = Range::between(0.0, 30.0);
+        assert_eq!((r.excess(-2.0), r.excess(10.0), r.excess(31.0)), (-2.0, 0.0, 1.0));
+        assert_eq!(Range::OPEN.excess(1e9), 0.0);
+    }
+
+    #[test]
+    fn a_circle_is_inscribed() {
+        let Region::Polygon(corners) = circle(UvPrime { u: 0.25, v: 0.52 }, 0.002) else {
+            panic!("not a polygon")
+        };
+        assert_eq!(corners.len(), ROUND_SIDES);
+        for c in corners {
+            assert!(((c.u - 0.25).hypot(c.v - 0.52) - 0.002).abs() < 1e-15);
+        }
     }
 }

@@ -9,7 +9,7 @@ use crate::ask::{Ask, Wanted, white_of};
 use crate::branch::{Effort, gap_at, prove};
 use crate::fixed::Plan;
 use crate::problem::{Control, Problem};
-use crate::region::{Piece, clip, isotherm, warm_side};
+use crate::region::{KIND_CHANGE_K, Piece, clip, isotherm, warm_side};
 use colour::locus::{cct_duv, uv_at};
 use colour::{Reference, Uv};
 use std::time::Instant;
@@ -85,6 +85,11 @@ fn cover(cct_k: [f64; 2], duv: [f64; 2]) -> Vec<[f64; 2]> {
 /// The CCT range of a piece.
 fn range(piece: &Piece) -> Option<[f64; 2]> {
     match piece {
+        // a box without extent in CCT still needs a slice with one; a superset is bounded then
+        Piece::Box { cct_k: [lo, hi], .. } if hi - lo < 0.02 => {
+            let at_change = *lo >= KIND_CHANGE_K && lo - 0.01 < KIND_CHANGE_K;
+            Some(if at_change { [*lo, hi + 0.02] } else { [lo - 0.01, hi + 0.01] })
+        }
         Piece::Box { cct_k, .. } => Some(*cct_k),
         Piece::Polygon { corners, cct_k } => {
             let k = corners.len();

@@ -2,7 +2,7 @@
 
 use crate::answer::{Outcome, Solution};
 use crate::ask::Wanted;
-use crate::fixed::{Plan, finish, solution_of, solve_at};
+use crate::fixed::{Plan, finish, shortfalls, solution_of, solve_at};
 use crate::infeasible::explain;
 use crate::problem::{Control, Metric, Objective, Problem, ProblemError, Region};
 use crate::region::solve_region;
@@ -31,6 +31,8 @@ fn at_point(problem: &Problem, plan: Plan, control: &Control<'_>) -> Outcome {
     let found = solve_at(problem, white, &reference, problem.maximise.into(), true, &[], plan, control);
     if let Ok(found) = &found
         && let Some(solution) = solution_of(problem, found, &reference)
+        // an Rg that is not defined (an empty hue bin) meets no limit
+        && shortfalls(problem, &solution.values, 1e-5).is_empty()
     {
         (control.progress)(1.0);
         return Outcome::Optimal(solution);
