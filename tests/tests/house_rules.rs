@@ -48,7 +48,7 @@ fn none(rule: &str, breaches: &[String]) {
 #[test]
 fn modules_stay_short_enough_to_read() {
     // The aim is 100 to 400 lines; this is the ceiling.
-    const MOST_LINES: usize = 1000;
+    const MOST_LINES: usize = 750;
     let breaches: Vec<String> = files(&[".rs"])
         .iter()
         .filter_map(|path| {
