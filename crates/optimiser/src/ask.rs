@@ -164,8 +164,13 @@ impl Ask {
         Ok(Ask::over(problem, &used, &tensors, space, reference, wanted, limits))
     }
 
-    /// Compiles a problem for whites inside a slice of a region. Limits on Rg are left out: its hue bins change with the reference.
-    pub(crate) fn within(problem: &Problem, slice: &Slice, wanted: Wanted) -> Result<Ask, NoSpace> {
+    /// Compiles a problem for whites inside a slice of a region. Limits on Rg count when the hue bins to use are given.
+    pub(crate) fn within(
+        problem: &Problem,
+        slice: &Slice,
+        wanted: Wanted,
+        bins: Option<&Reference>,
+    ) -> Result<Ask, NoSpace> {
         let (used, tensors, bounds) = participants(problem);
         let xyz: Vec<[f64; 3]> = tensors.iter().map(xyz2).collect();
         if used.is_empty() {
@@ -182,12 +187,26 @@ impl Ask {
             return Err(NoSpace::White);
         }
         let mut bare = problem.clone();
-        bare.limits.rg = Range::OPEN;
+        bare.limits.rg = match bins {
+            // the reference's own area changes over the slice: the limits give way by as much
+            Some(bins) => {
+                let give = slice.area_change(bins);
+                let asked = problem.limits.rg;
+                Range {
+                    low: asked.low.map(|l| l - give * l.abs()),
+                    high: asked.high.map(|h| h + give * h.abs()),
+                }
+            }
+            None => Range::OPEN,
+        };
         let mut ask = Ask::over(&bare, &used, &tensors, space, &slice.middle, wanted, true);
         if ask.tcs.take().is_some() {
             ask.moving = Some(MovingTcs::new(&tensors, &ask.space, slice));
         }
         ask.rf_slack = slice.rf_slack;
+        if let (Some(ces), Some(bins)) = (&mut ask.ces, bins) {
+            ces.take_bins(bins);
+        }
         Ok(ask)
     }
 

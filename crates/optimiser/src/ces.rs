@@ -257,6 +257,17 @@ impl CesForms {
         forms
     }
 
+    /// Takes the hue bins of another reference; colours stay those of the own one.
+    pub(crate) fn take_bins(&mut self, of: &Reference) {
+        self.bin = std::array::from_fn(|i| of.hue_bin(i));
+        self.bin_count = [0.0; BINS];
+        for b in self.bin {
+            self.bin_count[b] += 1.0;
+        }
+        let means = self.bin_means(&self.reference[1], &self.reference[2]);
+        self.reference_area = area(&means);
+    }
+
     fn bin_means(&self, a: &Lane, b: &Lane) -> [[f64; BINS]; 2] {
         let mut s = [[0.0; BINS]; 2];
         for i in 0..SAMPLES {
@@ -732,6 +743,22 @@ impl CesForms {
             }
         }
     }
+}
+
+/// Area of the reference's polygon when samples are binned by the hues of another.
+pub(crate) fn reference_area(of: &Reference, binned_by: &Reference) -> f64 {
+    let (mut sums, mut count) = ([[0.0; BINS]; 2], [0.0; BINS]);
+    for i in 0..SAMPLES {
+        let (jab, b) = (of.ces_jab(i), binned_by.hue_bin(i));
+        sums[0][b] += jab[1];
+        sums[1][b] += jab[2];
+        count[b] += 1.0;
+    }
+    for b in 0..BINS {
+        sums[0][b] /= count[b];
+        sums[1][b] /= count[b];
+    }
+    area(&sums)
 }
 
 /// The signed area of the polygon of bin means.

@@ -7,6 +7,7 @@
 use crate::answer::Stop;
 use crate::ask::{Ask, Wanted, white_of};
 use crate::branch::{Effort, gap_at, prove};
+use crate::ces::reference_area;
 use crate::fixed::Plan;
 use crate::problem::{Control, Problem};
 use crate::region::{KIND_CHANGE_K, Piece, clip, isotherm, warm_side};
@@ -18,8 +19,10 @@ use std::time::Instant;
 pub(crate) const REGION_GAP: f64 = 5e-4;
 /// Slices a piece starts with.
 const FIRST: usize = 6;
-/// Boxes spent on a slice before it is cut.
+/// Boxes spent on a slice before it is cut; doubled where they did not suffice.
 const BOXES_EACH: u64 = 192;
+/// Slices are not cut below this width.
+const NARROWEST_K: f64 = 1e-2;
 
 /// A part of a region between two isotherms.
 pub(crate) struct Slice {
@@ -146,6 +149,27 @@ impl Slice {
     }
 }
 
+impl Slice {
+    /// Relative change of the reference's polygon from the middle to the further end, samples binned as given.
+    pub(crate) fn area_change(&self, bins: &Reference) -> f64 {
+        let middle = reference_area(&self.middle, bins);
+        let change = |end: &Reference| (reference_area(end, bins) / middle - 1.0).abs();
+        1.05 * change(&self.ends[0]).max(change(&self.ends[1])) + 1e-12
+    }
+
+    /// The hue bins that occur in the slice, each to be bounded; None inside: not known, leave Rg out.
+    pub(crate) fn bins(&self) -> Vec<Option<&Reference>> {
+        let [a, b] = &self.ends;
+        let changed = (0..99).filter(|&i| a.hue_bin(i) != b.hue_bin(i)).count();
+        match changed {
+            0 => vec![Some(a)],
+            // a single sample changes its bin somewhere inside: before or after
+            1 => vec![Some(a), Some(b)],
+            _ => vec![None],
+        }
+    }
+}
+
 /// What the proof of a region found.
 pub(crate) struct RegionProof {
     /// Nothing in the region exceeds this; −∞ when nothing in it meets the limits.
@@ -165,7 +189,7 @@ pub(crate) fn bound_region(
     let beat = if best.is_finite() { best + gap_at(best, REGION_GAP) } else { best };
     let wanted = Wanted::from(problem.maximise);
     // open slices with their bounds
-    let mut open: Vec<(f64, usize, [f64; 2])> = Vec::new();
+    let mut open: Vec<(f64, usize, [f64; 2], u32)> = Vec::new();
     for (i, piece) in pieces.iter().enumerate() {
         let Some(range) = range(piece) else {
             return RegionProof { upper: f64::INFINITY, boxes: 0, stop: None };
@@ -178,7 +202,7 @@ pub(crate) fn bound_region(
         for c in cuts.windows(2) {
             for k in 0..FIRST {
                 let at = |k: usize| c[0] + (c[1] - c[0]) * k as f64 / FIRST as f64;
-                open.push((f64::INFINITY, i, [at(k), at(k + 1)]));
+                open.push((f64::INFINITY, i, [at(k), at(k + 1)], 0));
             }
         }
     }
@@ -197,32 +221,44 @@ pub(crate) fn bound_region(
         if stop.is_some() {
             break;
         }
-        let (bound, i, cct_k) = open.swap_remove(next);
+        let (bound, i, cct_k, level) = open.swap_remove(next);
         let Some(slice) = Slice::new(&pieces[i], cct_k) else { continue };
         boxes += 1;
-        let Ok(ask) = Ask::within(problem, &slice, wanted) else { continue };
-        let effort = Effort {
-            boxes: BOXES_EACH.min(plan.boxes - boxes.min(plan.boxes)),
-            until: plan.until,
-            gap: REGION_GAP,
-            floor: best,
-            // blends found here would be judged by the slice's reference, not their own
-            hints: false,
-        };
-        let proof = prove(&ask, None, effort, control);
-        boxes += proof.boxes;
-        let upper = proof.upper.min(bound);
+        let variants = if problem.limits.rg.is_open() { vec![None] } else { slice.bins() };
+        let mut upper = f64::NEG_INFINITY;
+        let mut short_of_boxes = false;
+        for bins in variants {
+            let Ok(ask) = Ask::within(problem, &slice, wanted, bins) else { continue };
+            let effort = Effort {
+                boxes: (BOXES_EACH << level.min(20)).min(plan.boxes - boxes.min(plan.boxes)),
+                until: plan.until,
+                gap: REGION_GAP,
+                floor: best,
+                // blends found here would be judged by the slice's reference, not their own
+                hints: false,
+            };
+            let proof = prove(&ask, None, effort, control);
+            boxes += proof.boxes;
+            upper = upper.max(proof.upper);
+            // more boxes next time: a narrower slice alone would not close it
+            short_of_boxes |= proof.stop == Some(Stop::Boxes);
+        }
+        let upper = upper.min(bound);
         if upper <= beat {
             continue;
         }
+        let level = level + u32::from(short_of_boxes);
         let mid = 0.5 * (slice.cct_k[0] + slice.cct_k[1]);
-        if slice.cct_k[1] - slice.cct_k[0] < 1e-3 {
-            open.push((upper, i, cct_k));
+        if slice.cct_k[1] - slice.cct_k[0] < NARROWEST_K {
+            open.push((upper, i, cct_k, level));
+            if short_of_boxes {
+                continue;
+            }
             stop = Some(Stop::Boxes);
             break;
         }
-        open.push((upper, i, [cct_k[0], mid]));
-        open.push((upper, i, [mid, cct_k[1]]));
+        open.push((upper, i, [cct_k[0], mid], level));
+        open.push((upper, i, [mid, cct_k[1]], level));
         (control.progress)(0.5 + 0.5 * (boxes as f32 / plan.boxes.max(1) as f32).min(1.0));
     }
     let left = open.iter().map(|o| o.0).fold(f64::NEG_INFINITY, f64::max);

@@ -267,6 +267,8 @@ fn examine_slice(seed: u64, pairs: usize) -> (usize, f64) {
     let mut dice = Dice::new(seed);
     problem.region = crate::problem::Region::Box { cct_k: 150.0, duv: 0.003 };
     problem.limits = Limits { rg: Range::OPEN, ..watch_everything() };
+    let mut problem_with_rg = problem.clone();
+    problem_with_rg.limits = watch_everything();
     let wanted = Wanted { metric: Metric::Ler, sign: 1.0 };
     let (mut checked, mut worst) = (0, f64::NEG_INFINITY);
     for piece in crate::region::pieces(&problem) {
@@ -281,7 +283,7 @@ fn examine_slice(seed: u64, pairs: usize) -> (usize, f64) {
             let Some(slice) = crate::region_proof::Slice::new(&piece, [start, start + width]) else {
                 continue;
             };
-            let Ok(ask) = Ask::within(&problem, &slice, wanted) else { continue };
+            let Ok(ask) = Ask::within(&problem, &slice, wanted, None) else { continue };
             let d = ask.space.d;
             let mut work = Work::default();
             for _ in 0..pairs.div_ceil(2) {
@@ -305,6 +307,24 @@ fn examine_slice(seed: u64, pairs: usize) -> (usize, f64) {
                     let m = ask.model(metric, &work);
                     let along = inner(&m.grad[..d], &step);
                     let value = crate::ask::inward(metric, v.get(metric));
+                    worst = worst.max(value - m.upper - along).max(m.lower + along - value);
+                }
+                // Rg against the bins of its own reference, which must be those of one end
+                let own = Reference::at(white.cct_k);
+                let same = |end: &&&Reference| (0..99).all(|i| own.hue_bin(i) == end.hue_bin(i));
+                if let Some(bins) = slice.bins().iter().flatten().find(same).filter(|_| checked % 4 == 0)
+                    && let Ok(with_rg) = Ask::within(&problem_with_rg, &slice, wanted, Some(bins))
+                {
+                    with_rg.over_box(&centre, &radius, &mut work);
+                    let m = with_rg.model(Metric::Rg, &work);
+                    let along = inner(&m.grad[..d], &step);
+                    let ratio = crate::ces::reference_area(&own, bins)
+                        / crate::ces::reference_area(&slice.middle, bins);
+                    assert!(
+                        (ratio - 1.0).abs() <= slice.area_change(bins),
+                        "the reference's area strays by {ratio}"
+                    );
+                    let value = v.rg * ratio;
                     worst = worst.max(value - m.upper - along).max(m.lower + along - value);
                 }
                 checked += 1;
