@@ -3,6 +3,7 @@
 //! `cargo bench -p checks --bench solver`. Sets are random Gaussians from fixed seeds, so every run solves the same problems.
 
 #![allow(missing_docs, reason = "the entry points criterion makes have no documentation")]
+#![allow(clippy::print_stderr, reason = "a time is read beside the gap it reached")]
 
 use colour::Reference;
 use colour::shapes::Shape;
