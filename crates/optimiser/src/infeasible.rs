@@ -55,17 +55,21 @@ pub(crate) fn outside(problem: &Problem, region: &[[f64; 2]]) -> Infeasible {
     let uv = Uv { u: near.uv[0], v: near.uv[1] };
     let white = cct_duv(uv);
     let place = white.map_or_else(String::new, |w| format!(" ({:.0} K, Duv {:+.4})", w.cct_k, w.duv));
+    let shares = spread(&near.shares, &used, all);
+    // The limits are judged there too, where the white has a reference at all.
+    let values = white.map(|w| values_of(problem, &shares, &Reference::at(w.cct_k)));
+    let short = values.as_ref().map_or_else(Vec::new, |v| shortfalls(problem, v, 1e-6));
     let why = if problem.bounds.iter().any(|b| *b != (0.0, 1.0)) { " within their share bounds" } else { "" };
     Infeasible {
         nearest: Nearest {
-            shares: spread(&near.shares, &used, all),
+            shares,
             u: near.uv[0],
             v: near.uv[1],
             distance_uv1960: near.distance,
             cct_k: white.map(|w| w.cct_k),
             duv: white.map(|w| w.duv),
-            shortfalls: Vec::new(),
-            values: None,
+            shortfalls: short,
+            values,
         },
         reachable: Vec::new(),
         relaxations: Vec::new(),

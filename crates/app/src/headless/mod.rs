@@ -103,10 +103,11 @@ where
     I: IntoIterator<Item = T>,
     T: Into<OsString> + Clone,
 {
-    match Cli::try_parse_from(arguments) {
+    let arguments: Vec<OsString> = arguments.into_iter().map(Into::into).collect();
+    match Cli::try_parse_from(&arguments) {
         Ok(Cli { command: Some(command), .. }) => perform(&command).into(),
         Ok(cli) => window::open(&cli.open, cli.renderer),
-        Err(error) => usage::answer(&error).into(),
+        Err(error) => usage::answer(&error, &arguments).into(),
     }
 }
 

@@ -1,18 +1,35 @@
 //! What is said when the arguments themselves cannot be used: one line, what was expected and what was found.
 
+use super::answer::AnswerRecord;
 use super::{BadInput, Exit, output};
 use clap::error::{ContextKind, ContextValue, ErrorKind};
 use std::error::Error;
+use std::ffi::OsString;
 
-/// Prints help or version, or says in one line what is wrong with the arguments.
-pub(super) fn answer(error: &clap::Error) -> Exit {
+/// Commands whose document is a list; the others answer with one record.
+const LISTS: [&str; 4] = ["read", "measure", "recipe", "correct"];
+
+/// Prints help or version, or says in one line what is wrong with the arguments. Where JSON was asked for, the document
+/// is there all the same: an empty list, or a record of nulls with the sentence.
+pub(super) fn answer(error: &clap::Error, arguments: &[OsString]) -> Exit {
     match error.kind() {
         ErrorKind::DisplayHelp | ErrorKind::DisplayVersion => {
             output::text(error.render().to_string().trim_end());
             Exit::Done
         }
         _ => {
-            output::sentence(BadInput::line(&sentence(error)));
+            let sentence = sentence(error);
+            if arguments.iter().any(|a| a == "--json") {
+                if arguments.get(1).is_some_and(|command| LISTS.iter().any(|list| command == list)) {
+                    output::json(&[(); 0]);
+                } else {
+                    output::json(&AnswerRecord {
+                        message: Some(sentence.clone()),
+                        ..AnswerRecord::default()
+                    });
+                }
+            }
+            output::sentence(BadInput::line(&sentence));
             Exit::Bad
         }
     }
