@@ -8,13 +8,13 @@ use super::notice::Notice;
 use super::proof::{self, Question, Solved};
 use super::session::{self, Session};
 use super::theme::{self, Palette};
-use super::view::{Proof, Scene, View};
+use super::view::{Bench, Proof, Scene, View};
 use super::wish::Wish;
-use super::{ledger, loom, top_bar};
+use super::{frontier, ledger, loom, top_bar};
 use crate::jobs::{Answer, Jobs};
 use crate::state::demo::{CABIN, LIBRARY};
 use crate::state::derived::{Cache, Derived};
-use crate::state::{Edit, State};
+use crate::state::{Edit, EditError, State};
 use egui::{Context, Event, Frame, Margin, Panel, Rect, RichText, Theme, Ui, ViewportCommand, pos2};
 use files::read::Reading;
 use project::{Project, SetId};
@@ -32,6 +32,7 @@ const GREATEST_FILE: u64 = files::read::MAX_FILE_BYTES;
 enum Done {
     Solved(Box<Option<Solved>>),
     Read(Box<Reading>),
+    Frontier(Box<Option<frontier::Answer>>),
 }
 
 /// An answer of the solver, and the shares it gave.
@@ -134,6 +135,19 @@ impl Window {
         self.jobs.progress_of("solve").is_some()
     }
 
+    /// True while any job waits or runs.
+    pub fn is_working(&self) -> bool {
+        !self.jobs.is_idle()
+    }
+
+    /// Makes an edit, as a control of the window would.
+    ///
+    /// # Errors
+    /// When it cannot be made; the project is then as it was.
+    pub fn make(&mut self, edit: Edit) -> Result<(), EditError> {
+        self.state.apply(edit)
+    }
+
     /// The solver's last word on the blend as it stands, as the ledger shows it.
     pub fn proof_words(&self) -> Option<&str> {
         self.proof().map(|proof| proof.words.as_str())
@@ -147,6 +161,7 @@ impl Window {
             match finished.answer {
                 Answer::Done(Done::Solved(solved)) => self.solved(context, *solved),
                 Answer::Done(Done::Read(reading)) => self.imports.read(*reading),
+                Answer::Done(Done::Frontier(answer)) => self.view.frontier.take(*answer),
                 Answer::Panicked(message) => {
                     self.say(context, format!("The work stopped unexpectedly: {message}"));
                 }
@@ -185,6 +200,7 @@ impl Window {
         let derived = self.cache.of(&self.state);
         let saved = self.saved();
         self.view.dialog_open = self.view.details.is_some() || self.paths.is_open() || self.imports.is_open();
+        let running = self.jobs.running();
         let mut view = std::mem::take(&mut self.view);
         {
             let scene = Scene {
@@ -193,6 +209,7 @@ impl Window {
                 derived: &derived,
                 proof: self.proof(),
                 solving: self.jobs.progress_of("solve").map(|job| job.progress),
+                jobs: &running,
             };
             draw(ui, &scene, &saved, &mut view, &mut wishes);
         }
@@ -256,6 +273,14 @@ impl Window {
                 Wish::Cancel => self.state.cancel_gesture(),
                 Wish::Say(words) => self.say(context, words),
                 Wish::Command(command) => self.run(context, command),
+                Wish::Frontier(ask) => {
+                    self.state.end_gesture();
+                    let project = self.state.project().clone();
+                    self.jobs.start(ask.key(), self.state.revision(), move |token| {
+                        Done::Frontier(Box::new(ask.run(&project, token)))
+                    });
+                }
+                Wish::Stop(key) => self.jobs.cancel(key),
             }
         }
         self.journal(context);
@@ -291,6 +316,7 @@ impl Window {
         self.cache.forget_revision();
         self.view.pull = None;
         self.view.details = None;
+        self.view.frontier = frontier::Frontier::default();
         self.kept.clear();
         self.demonstration = false;
         self.session.restart(&self.state);
@@ -333,6 +359,7 @@ impl Window {
             }
             Command::Solve => self.solve(context),
             Command::StopSolving => self.jobs.cancel("solve"),
+            Command::Show(bench) => self.view.bench = bench,
             Command::HoldWhite => self.view.hold_white = !self.view.hold_white,
             Command::AddSet => {
                 let edit = self.state.adding_set("New set");
@@ -599,12 +626,15 @@ fn draw(ui: &mut Ui, scene: &Scene<'_>, saved: &str, view: &mut View, wishes: &m
     let full = ui.available_rect_before_wrap();
     ui.painter().rect_filled(ui.max_rect(), 0.0, scene.palette.ground);
     let bar = Rect::from_min_max(full.min, pos2(full.right(), full.top() + top_bar::HEIGHT));
-    top_bar::show(ui, bar, scene, saved, wishes);
+    top_bar::show(ui, bar, scene, saved, view.bench, wishes);
     let body = Rect::from_min_max(pos2(full.left(), bar.bottom()), full.max).shrink(GAP);
     let split = body.right() - LEDGER_WIDTH;
     let loom_rect = Rect::from_min_max(body.min, pos2(split - GAP, body.bottom()));
     let ledger_rect = Rect::from_min_max(pos2(split, body.top()), body.max);
-    ui.push_id("loom", |ui| loom::show(ui, loom_rect, scene, view, wishes));
+    match view.bench {
+        Bench::Mixing => ui.push_id("loom", |ui| loom::show(ui, loom_rect, scene, view, wishes)),
+        Bench::Frontier => ui.push_id("frontier", |ui| frontier::show(ui, loom_rect, scene, view, wishes)),
+    };
     ui.push_id("ledger", |ui| ledger::show(ui, ledger_rect, scene, view, wishes));
     dialogs::emitter::show(ui, scene, view, wishes);
 }

@@ -1,5 +1,6 @@
 //! Every command: its words, its key, what it does in one line. Menus, buttons and keys all read from here.
 
+use super::view::Bench;
 use egui::{Key, KeyboardShortcut, Modifiers};
 
 /// The commands of the window.
@@ -21,6 +22,7 @@ pub(super) enum Command {
     Solve,
     StopSolving,
     HoldWhite,
+    Show(Bench),
     AddSet,
     DuplicateSet,
     RemoveSet,
@@ -30,7 +32,7 @@ pub(super) enum Command {
 
 impl Command {
     /// All commands with a key.
-    const KEYED: [Self; 10] = [
+    const KEYED: [Self; 12] = [
         Self::SaveAs,
         Self::Save,
         Self::Open,
@@ -40,6 +42,8 @@ impl Command {
         Self::Undo,
         Self::Solve,
         Self::HoldWhite,
+        Self::Show(Bench::Mixing),
+        Self::Show(Bench::Frontier),
         Self::Quit,
     ];
 
@@ -62,6 +66,7 @@ impl Command {
             Self::Solve => "Solve",
             Self::StopSolving => "Stop solving",
             Self::HoldWhite => "Hold the white while pulling",
+            Self::Show(bench) => bench.words(),
             Self::AddSet => "New empty set",
             Self::DuplicateSet => "Duplicate this set",
             Self::RemoveSet => "Remove this set",
@@ -84,6 +89,8 @@ impl Command {
             Self::Redo => KeyboardShortcut::new(Modifiers::COMMAND, Key::Y),
             Self::Solve => KeyboardShortcut::new(Modifiers::COMMAND, Key::Enter),
             Self::HoldWhite => KeyboardShortcut::new(Modifiers::COMMAND, Key::H),
+            Self::Show(Bench::Mixing) => KeyboardShortcut::new(Modifiers::COMMAND, Key::Num1),
+            Self::Show(Bench::Frontier) => KeyboardShortcut::new(Modifiers::COMMAND, Key::Num2),
             Self::Quit => KeyboardShortcut::new(Modifiers::COMMAND, Key::Q),
             _ => return None,
         })

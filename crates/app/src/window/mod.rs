@@ -11,6 +11,7 @@ mod app;
 mod command;
 mod controls;
 mod dialogs;
+mod frontier;
 mod launch;
 mod ledger;
 mod loom;

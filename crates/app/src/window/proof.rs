@@ -1,6 +1,7 @@
 //! Solving as a job, and its answer in words.
 
 use super::view::{Proof, WayOut};
+use crate::frontier::Refusal;
 use crate::jobs::Token;
 use crate::solving::{SetProblem, set_problem};
 use crate::state::Edit;
@@ -161,39 +162,30 @@ impl Solved {
     }
 
     fn refusal(&self, infeasible: &Infeasible, set: &EmitterSet) -> Proof {
-        let mut words = infeasible.explanation.clone();
-        if !infeasible.proven {
-            words.push_str(" (None was found; that none exists is not proven.)");
-        }
-        let mut ways_out: Vec<WayOut> = infeasible
-            .relaxations
-            .iter()
-            .filter_map(|relaxation| {
-                let metric = project::Metric::ALL.into_iter().find(|m| m.key() == relaxation.metric.key())?;
-                let mut white = set.white.clone();
-                let limit = white.limits.of_mut(metric);
-                // Rounded to the side that opens the problem.
-                let to = if relaxation.lower_end {
-                    (relaxation.to * 10.0).floor() / 10.0
-                } else {
-                    (relaxation.to * 10.0).ceil() / 10.0
-                };
-                let end = if relaxation.lower_end { &mut limit.low } else { &mut limit.high };
-                *end = Some(to);
-                let words = format!("{} {to} would open it", title(relaxation.metric));
-                Some(WayOut { words, edit: Edit::White { set: set.id, white: Box::new(white) }, solve: true })
-            })
-            .collect();
-        let shares = self.whole(set, &infeasible.nearest.shares);
-        if (shares.iter().sum::<f64>() - 1.0).abs() < 1e-6 {
-            ways_out.push(WayOut {
-                words: "Take the nearest blend".to_owned(),
-                edit: Edit::Shares { set: set.id, shares },
-                solve: false,
-            });
-        }
-        Proof { words, ways_out, met: false }
+        let refusal = Refusal::of(infeasible, set, &self.members);
+        Proof { ways_out: ways_out(&refusal, set.id), words: refusal.words, met: false }
     }
+}
+
+/// What a refusal offers: one limit relaxed, or the nearest blend.
+pub(super) fn ways_out(refusal: &Refusal, set: SetId) -> Vec<WayOut> {
+    let mut ways: Vec<WayOut> = refusal
+        .relaxations
+        .iter()
+        .map(|relax| WayOut {
+            words: relax.words.clone(),
+            edit: Edit::White { set, white: Box::new(relax.white.clone()) },
+            limit: Some(relax.metric),
+            solve: true,
+        })
+        .collect();
+    ways.extend(refusal.nearest.clone().map(|shares| WayOut {
+        words: "Take the nearest blend".to_owned(),
+        edit: Edit::Shares { set, shares },
+        limit: None,
+        solve: false,
+    }));
+    ways
 }
 
 fn amount(maximise: Maximise, value: f64) -> String {

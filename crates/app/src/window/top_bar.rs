@@ -4,7 +4,7 @@ use super::command::Command;
 use super::controls::{primary_button, sign_button};
 use super::paint::{Icon, elided, icon, measure, write};
 use super::theme::{Palette, text};
-use super::view::Scene;
+use super::view::{Bench, Scene};
 use super::wish::Wish;
 use crate::state::Edit;
 use egui::accesskit::Role;
@@ -27,7 +27,14 @@ pub(super) const fn maximised(what: Maximise) -> &'static str {
 }
 
 /// Draws the bar.
-pub(super) fn show(ui: &mut Ui, rect: Rect, scene: &Scene<'_>, saved: &str, wishes: &mut Vec<Wish>) {
+pub(super) fn show(
+    ui: &mut Ui,
+    rect: Rect,
+    scene: &Scene<'_>,
+    saved: &str,
+    shown: Bench,
+    wishes: &mut Vec<Wish>,
+) {
     let palette = scene.palette;
     let painter = ui.painter().clone();
     painter.rect_filled(rect, CornerRadius::ZERO, palette.card);
@@ -39,12 +46,19 @@ pub(super) fn show(ui: &mut Ui, rect: Rect, scene: &Scene<'_>, saved: &str, wish
     let name = &scene.state.project().name;
     let left = rect.left() + 50.0;
     let room = (rect.width() * 0.26).max(120.0);
-    let shown = elided(&painter, pos2(left, y - 9.0), room, name, text::title(), palette.ink);
-    let state = pos2(shown.right() + 12.0, y - 6.5);
+    let title = elided(&painter, pos2(left, y - 9.0), room, name, text::title(), palette.ink);
+    let state = pos2(title.right() + 12.0, y - 6.5);
     let right = left + room + 130.0;
     let state = elided(&painter, state, right - state.x - 12.0, saved, text::small(), palette.muted);
 
-    let tab = tab(ui, pos2(right.max(state.right() + 24.0), rect.bottom()), rect, "Mixing", true);
+    let mut tabs = right.max(state.right() + 24.0);
+    for bench in Bench::ALL {
+        let (tab, clicked) = tab(ui, pos2(tabs, rect.bottom()), rect, bench, bench == shown);
+        if clicked {
+            wishes.push(Wish::Command(Command::Show(bench)));
+        }
+        tabs = tab.right();
+    }
 
     // From the right: appearance, undo and redo, Solve, what is maximised.
     let x = rect.right() - 26.0;
@@ -71,14 +85,15 @@ pub(super) fn show(ui: &mut Ui, rect: Rect, scene: &Scene<'_>, saved: &str, wish
     }
     let solve = Rect::from_center_size(pos2(x - 150.0, y), vec2(92.0, 30.0));
     solve_button(ui, solve, scene, wishes);
-    maximise(ui, pos2(solve.left() - 14.0, y), tab.right() + 20.0, scene, wishes);
+    maximise(ui, pos2(solve.left() - 14.0, y), tabs + 20.0, scene, wishes);
 }
 
 fn square(x: f32, y: f32) -> Rect {
     Rect::from_center_size(pos2(x, y), vec2(30.0, 30.0))
 }
 
-fn tab(ui: &Ui, left_bottom: egui::Pos2, bar: Rect, words: &str, current: bool) -> Rect {
+fn tab(ui: &Ui, left_bottom: egui::Pos2, bar: Rect, bench: Bench, current: bool) -> (Rect, bool) {
+    let words = bench.words();
     let palette = Palette::of(ui.ctx());
     let font = text::strong();
     let size = measure(ui.painter(), words, font.clone());
@@ -86,7 +101,7 @@ fn tab(ui: &Ui, left_bottom: egui::Pos2, bar: Rect, words: &str, current: bool) 
         Rect::from_min_max(pos2(left_bottom.x, bar.top()), pos2(left_bottom.x + size.x + 24.0, bar.bottom()));
     let response = ui.interact(rect, ui.scope_id().with(("bench", words)), Sense::click());
     response.widget_info(|| WidgetInfo::selected(Role::Tab, true, current, format!("{words} bench")));
-    let ink = if current { palette.ink } else { palette.muted };
+    let ink = if current || response.hovered() { palette.ink } else { palette.muted };
     write(ui.painter(), rect.center(), Align2::CENTER_CENTER, words, font, ink);
     if current {
         let line =
@@ -94,7 +109,9 @@ fn tab(ui: &Ui, left_bottom: egui::Pos2, bar: Rect, words: &str, current: bool) 
         ui.painter().rect_filled(line, CornerRadius::ZERO, palette.accent);
     }
     super::controls::focus_ring(ui, &response, 3);
-    rect
+    let clicked = response.clicked();
+    response.on_hover_text(Command::Show(bench).hint(ui.ctx()));
+    (rect, clicked)
 }
 
 fn solve_button(ui: &mut Ui, rect: Rect, scene: &Scene<'_>, wishes: &mut Vec<Wish>) {

@@ -1,8 +1,10 @@
 //! What the window remembers besides the project: nothing here is saved with it or undone.
 
 use super::dialogs::emitter::Details;
+use super::frontier::Frontier;
 use super::loom::Pull;
 use super::theme::Palette;
+use crate::jobs::Running;
 use crate::state::derived::Derived;
 use crate::state::{Edit, State};
 use project::EmitterId;
@@ -17,6 +19,29 @@ pub(super) struct Scene<'a> {
     pub(super) proof: Option<&'a Proof>,
     /// How far a running solve is, 0 to 1.
     pub(super) solving: Option<f64>,
+    /// The jobs that have not ended.
+    pub(super) jobs: &'a [Running],
+}
+
+/// The benches along the top.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
+pub(super) enum Bench {
+    #[default]
+    Mixing,
+    Frontier,
+}
+
+impl Bench {
+    /// All of them, in the order of their tabs.
+    pub(super) const ALL: [Self; 2] = [Self::Mixing, Self::Frontier];
+
+    /// The word on its tab.
+    pub(super) const fn words(self) -> &'static str {
+        match self {
+            Self::Mixing => "Mixing",
+            Self::Frontier => "Frontier",
+        }
+    }
 }
 
 /// The solver's last word, as the ledger's last line shows it.
@@ -35,6 +60,8 @@ pub(super) struct Proof {
 pub(super) struct WayOut {
     pub(super) words: String,
     pub(super) edit: Edit,
+    /// The limit it moves, when it moves one.
+    pub(super) limit: Option<project::Metric>,
     /// Solve again afterwards.
     pub(super) solve: bool,
 }
@@ -51,6 +78,10 @@ pub(super) enum Section {
 /// The window's own state.
 #[derive(Debug)]
 pub(super) struct View {
+    /// The bench that is shown.
+    pub(super) bench: Bench,
+    /// What the Frontier bench remembers.
+    pub(super) frontier: Frontier,
     /// Pulling moves along the blends that keep the white.
     pub(super) hold_white: bool,
     /// The pull under way.
@@ -74,6 +105,8 @@ pub(super) struct View {
 impl Default for View {
     fn default() -> Self {
         Self {
+            bench: Bench::default(),
+            frontier: Frontier::default(),
             hold_white: false,
             pull: None,
             pull_scale: 1.0,

@@ -1,6 +1,7 @@
 //! What drawing a frame asks for; the application grants it after the frame is drawn.
 
 use super::command::Command;
+use super::frontier::Ask;
 use crate::state::Edit;
 
 /// One thing asked for.
@@ -16,6 +17,10 @@ pub(super) enum Wish {
     Cancel,
     /// Do what a menu, button or key stands for.
     Command(Command),
+    /// Start a job of the Frontier bench.
+    Frontier(Ask),
+    /// Stop the job of that key.
+    Stop(&'static str),
     /// Tell the user something.
     Say(String),
 }

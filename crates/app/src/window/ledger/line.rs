@@ -1,9 +1,10 @@
 //! One line of the ledger.
 
+use super::super::command::Command;
 use super::super::controls::focus_ring;
 use super::super::paint::{Icon, Words, elided, icon, write};
 use super::super::theme::{Palette, text};
-use super::super::view::{Scene, Section, View};
+use super::super::view::{Scene, Section, View, WayOut};
 use super::super::wish::Wish;
 use super::limits;
 use crate::state::derived::{LedgerLine, LineState};
@@ -76,6 +77,10 @@ pub(super) fn show(
         }
         let x = if line.bar.is_some() { LIMIT_X + 4.0 } else { VALUE_X };
         let room = width - x;
+        if let Some(way) = way_out(scene, line) {
+            relax(ui, pos2(rect.left() + x, y), way, &palette, wishes);
+            return;
+        }
         let remark = rect.left() + x;
         let shown = elided(&painter, pos2(remark, y - 7.0), room, &line.remark, text::small(), palette.muted);
         if !line.remark.is_empty() {
@@ -85,6 +90,38 @@ pub(super) fn show(
     } else if !line.remark.is_empty() && line.key == "light" {
         let at = pos2(rect.left() + LIMIT_X + 4.0, top);
         let _ = at;
+    }
+}
+
+/// The way out of a refusal that moves this line's limit.
+fn way_out<'a>(scene: &'a Scene<'_>, line: &LedgerLine) -> Option<&'a WayOut> {
+    let proof = scene.proof.filter(|proof| !proof.met && scene.solving.is_none())?;
+    proof.ways_out.iter().find(|way| way.limit.is_some_and(|limit| limit.key() == line.key))
+}
+
+/// One click moves the limit as far as it must and solves again.
+fn relax(ui: &Ui, left_centre: Pos2, way: &WayOut, palette: &Palette, wishes: &mut Vec<Wish>) {
+    let painter = ui.painter();
+    let at = left_centre + vec2(5.0, 0.0);
+    let words = &way.words;
+    let shown = write(painter, at, Align2::LEFT_CENTER, words, text::small_strong(), palette.accent);
+    let area = Rect::from_min_max(
+        pos2(left_centre.x, shown.top() - 2.0),
+        pos2(shown.right() + 20.0, shown.bottom() + 2.0),
+    );
+    let response = ui.interact(area, ui.scope_id().with(("relax", words)), Sense::click());
+    response.widget_info(|| WidgetInfo::labeled(Role::Button, true, format!("Relax: {words}")));
+    if response.hovered() || response.has_focus() {
+        painter.rect_filled(area, CornerRadius::same(4), palette.accent_wash);
+        write(painter, at, Align2::LEFT_CENTER, words, text::small_strong(), palette.accent);
+    }
+    icon(painter, Icon::Closed, pos2(area.right() - 9.0, left_centre.y), 8.0, palette.accent);
+    focus_ring(ui, &response, 4);
+    if response.on_hover_text("Moves this limit and solves again").clicked() {
+        wishes.push(Wish::Edit(way.edit.clone()));
+        if way.solve {
+            wishes.push(Wish::Command(Command::Solve));
+        }
     }
 }
 
