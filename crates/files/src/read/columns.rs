@@ -27,6 +27,8 @@ pub(super) struct Layout {
     pub(super) series: Vec<Series>,
     /// Columns set aside that the header calls dark, reference, raw or no emission.
     pub(super) aside: Vec<(usize, Aside)>,
+    /// Columns of words: flags, remarks, times.
+    pub(super) no_numbers: Vec<usize>,
     /// A column of row numbers.
     pub(super) index: Option<usize>,
     /// Second axes of the same samples (energy beside wavelength).
@@ -55,6 +57,8 @@ impl Layout {
             aside.word()
         } else if self.index == Some(column) {
             "row number"
+        } else if self.no_numbers.contains(&column) {
+            "words"
         } else if self.spare_axes.contains(&column) {
             "second axis"
         } else {
@@ -175,6 +179,8 @@ pub(super) fn assign(
     };
     layout.frequency = hints.is_empty() && (0..width).any(|column| named(column).is_some());
 
+    layout.no_numbers.clone_from(&table.text_columns);
+    let hints: Vec<usize> = hints.into_iter().filter(|one| !table.text_columns.contains(one)).collect();
     let mut axes = if answers.start_nm.is_some() {
         hints.clone()
     } else {
@@ -206,6 +212,14 @@ pub(super) fn assign(
         })
         .filter(|&index| width > 200 || !column(index).is_empty())
         .collect();
+    let wordy = |index: &usize| width <= 200 && column(*index).values.is_empty();
+    let values = if values.iter().any(|index| !wordy(index)) {
+        let (words, values) = values.into_iter().partition::<Vec<_>, _>(wordy);
+        layout.no_numbers.extend(words);
+        values
+    } else {
+        values
+    };
     // Columns without a single number are read when there is nothing else, to say so.
     let values = if values.is_empty() {
         (0..width).filter(|index| !axes.contains(index) && layout.index != Some(*index)).collect()

@@ -3,6 +3,7 @@
 use super::answers::{Answers, Decimal};
 use super::number::{Mark, is_missing, mark};
 use super::split::{Lines, OpenQuote, Separator, cell_list, cells, is_comment};
+use super::units::axis_hint;
 
 /// Lines looked at closely; the rest of a long file is sampled.
 const HEAD_LINES: usize = 3000;
@@ -35,6 +36,8 @@ pub(super) struct Dialect {
     /// Cells written with the other decimal mark are read by their own mark.
     pub(super) either_mark: bool,
     pub(super) assumptions: Vec<String>,
+    /// Columns that hold words where the others hold numbers, counted from 0.
+    pub(super) text_columns: Vec<usize>,
     /// No line looked at holds numbers under any separator.
     pub(super) barren: bool,
 }
@@ -47,7 +50,7 @@ pub(super) fn choose(text: &str, answers: &Answers) -> Result<Dialect, OpenQuote
     let sample = sample(text)?;
     let lines = sample.as_slice();
     let scores: Vec<(Separator, Score)> =
-        Separator::ALL.into_iter().map(|one| (one, score(lines, one))).collect();
+        Separator::ALL.into_iter().map(|one| (one, score(lines, one, text_columns(lines, one)))).collect();
     let best = |value: fn(&Score) -> usize| {
         scores
             .iter()
@@ -55,7 +58,10 @@ pub(super) fn choose(text: &str, answers: &Answers) -> Result<Dialect, OpenQuote
             .max_by_key(|(_, score)| value(score))
             .map_or((Separator::Tab, 0), |(one, score)| (*one, value(score)))
     };
-    let (mut separator, rows) = best(|score| score.rows);
+    // Equal rows are better read without columns of words.
+    let (mut separator, rank) =
+        best(|score| 2 * score.rows - usize::from(score.rows > 0 && !score.text.is_empty()));
+    let rows = rank.div_ceil(2);
     if rows < 5 {
         let singles = scores[0].1.singles;
         let (wide, cells) = best(|score| score.wide);
@@ -67,7 +73,9 @@ pub(super) fn choose(text: &str, answers: &Answers) -> Result<Dialect, OpenQuote
             separator = best(|score| score.numbers).0;
         }
     }
-    let width = scores.iter().find(|(one, _)| *one == separator).map_or(1, |(_, score)| score.width).max(1);
+    let chosen = scores.iter().find(|(one, _)| *one == separator).map(|(_, score)| score);
+    let width = chosen.map_or(1, |score| score.width).max(1);
+    let text_columns = chosen.map(|score| score.text.clone()).unwrap_or_default();
     let mut dialect = Dialect {
         separator,
         decimal: Decimal::Point,
@@ -75,11 +83,13 @@ pub(super) fn choose(text: &str, answers: &Answers) -> Result<Dialect, OpenQuote
         doubt: None,
         either_mark: false,
         assumptions: Vec::new(),
+        text_columns,
         barren: scores
             .iter()
             .all(|(_, score)| score.numbers == 0 || score.rows + score.singles + score.wide == 0),
     };
     if separator == Separator::Comma
+        && dialect.text_columns.is_empty()
         && let Some(pairs) = comma_pairs(lines, width, answers)
     {
         let Some(line) = pairs.line else {
@@ -129,7 +139,7 @@ fn sample(text: &str) -> Result<Vec<(usize, &str)>, OpenQuote> {
     Ok(sample)
 }
 
-#[derive(Debug, Clone, Copy, Default)]
+#[derive(Debug, Clone, Default)]
 struct Score {
     /// Lines of two or more cells, all numbers or marks for none.
     rows: usize,
@@ -141,15 +151,59 @@ struct Score {
     wide: usize,
     /// Numbers altogether.
     numbers: usize,
+    /// Columns of words.
+    text: Vec<usize>,
 }
 
-fn score(lines: &[(usize, &str)], separator: Separator) -> Score {
-    let mut score = Score::default();
+/// Columns of flags, remarks or times: at least five words and no number beside two numbers or more, in lines of the
+/// commonest length. Labels of a table on its side are no such column.
+fn text_columns(lines: &[(usize, &str)], separator: Separator) -> Vec<usize> {
+    let mut widths: Vec<(usize, usize, Vec<(usize, usize)>)> = Vec::new();
+    for (_, line) in lines {
+        let mut kinds: Vec<Option<bool>> = Vec::new();
+        cells(line, separator, |cell| {
+            let number = mark(cell, separator.spaces_group()).is_some();
+            kinds.push(if number || !is_missing(cell) { Some(number) } else { None });
+            kinds.len() <= MARK_COLUMNS
+        });
+        let numbers = kinds.iter().filter(|kind| **kind == Some(true)).count();
+        if kinds.len() > MARK_COLUMNS || numbers < 2 {
+            continue;
+        }
+        let at = match widths.iter().position(|(width, ..)| *width == kinds.len()) {
+            Some(at) => at,
+            None if widths.len() < MARK_COLUMNS => {
+                let label = cell_list(line, separator).first().is_some_and(|cell| axis_hint(cell).is_some());
+                if label {
+                    return Vec::new();
+                }
+                widths.push((kinds.len(), 0, vec![(0, 0); kinds.len()]));
+                widths.len() - 1
+            }
+            None => continue,
+        };
+        widths[at].1 += 1;
+        for (column, kind) in kinds.iter().enumerate() {
+            widths[at].2[column].0 += usize::from(*kind == Some(true));
+            widths[at].2[column].1 += usize::from(*kind == Some(false));
+        }
+    }
+    widths.into_iter().max_by_key(|(_, times, _)| *times).map_or_else(Vec::new, |(_, _, columns)| {
+        let texts = columns.iter().enumerate();
+        texts.filter(|(_, (numbers, words))| *words >= 5 && *numbers == 0).map(|(column, _)| column).collect()
+    })
+}
+
+fn score(lines: &[(usize, &str)], separator: Separator, text: Vec<usize>) -> Score {
+    let mut score = Score { text, ..Score::default() };
     let mut widths: Vec<(usize, usize)> = Vec::new();
     for (_, line) in lines {
         let (mut numbers, mut missing, mut words) = (0, 0, 0);
+        let text = &score.text;
         cells(line, separator, |cell| {
-            if mark(cell, separator.spaces_group()).is_some() {
+            if text.contains(&(numbers + missing + words)) {
+                missing += 1;
+            } else if mark(cell, separator.spaces_group()).is_some() {
                 numbers += 1;
             } else if is_missing(cell) {
                 missing += 1;
@@ -351,7 +405,9 @@ fn count_marks(text: &str, dialect: &Dialect) -> Result<Vec<Marks>, OpenQuote> {
                     Some(mark),
                     cell.contains(',') && cell.contains('.') || cell.matches([',', '.']).count() > 1,
                 )),
-                None if is_missing(cell) => row.push((None, false)),
+                None if is_missing(cell) || dialect.text_columns.contains(&row.len()) => {
+                    row.push((None, false))
+                }
                 None => words = true,
             }
             !words && row.len() < 4096

@@ -249,6 +249,15 @@ fn names_axis_above(
             .any(|cells| cells.iter().any(|cell| axis_hint(cell).is_some()))
 }
 
+/// The lowest of some lines that names an axis among as many cells as the table has.
+pub(super) fn header_line<'a>(lines: &[TextLine<'a>], separator: Separator, width: usize) -> Option<&'a str> {
+    let names_axis = |line: &&TextLine<'_>| {
+        fitting_cells(line.text, separator, width, false)
+            .is_some_and(|cells| cells.iter().any(|cell| axis_hint(cell).is_some()))
+    };
+    lines.iter().rev().take(MAX_ROWS).filter(|_| width > 1).find(names_axis).map(|line| line.text.trim())
+}
+
 /// Whether a line of cells is a header row rather than a line of notes. `below` are the header rows already taken.
 fn accepts(
     cells: &[String],
@@ -286,7 +295,7 @@ fn accepts(
         return true;
     }
     if width >= 3 {
-        return filled >= 2 && (filled + 1 >= width || below_units);
+        return filled >= 2 && (filled + 1 >= width || below_units || names_pairs(cells));
     }
     let (first, second) = (&cells[0], &cells[1]);
     let key_value = first.is_empty()
@@ -302,21 +311,41 @@ fn accepts(
     !key_value && (notes == 0 || marked || below_units)
 }
 
+/// Nothing but units, one of which is longer than a letter that may be a name.
+fn is_unit_row(row: &[String]) -> bool {
+    row.iter().all(|cell| is_unit_cell(cell)) && row.iter().any(|cell| cell.trim().chars().count() > 1)
+}
+
+/// Every other cell is filled: `A,,B,`.
+fn names_pairs(cells: &[String]) -> bool {
+    cells.len() >= 4
+        && cells.len().is_multiple_of(2)
+        && cells.iter().enumerate().all(|(index, cell)| cell.is_empty() == (index % 2 == 1))
+}
+
 /// Builds the column headers from the header rows, top row first.
 fn columns(rows: &[Vec<String>], width: usize) -> Vec<ColumnHeader> {
-    let name_row = name_row(rows);
+    let with_units = rows.len() > 1 && rows.iter().any(|row| is_unit_row(row));
+    let is_name = |row: &[String], cell: &str| {
+        let letter = (with_units || names_pairs(row)) && !is_unit_row(row) && cell.chars().count() == 1;
+        letter && cell.chars().all(char::is_alphabetic) || !is_unit_cell(cell) && axis_hint(cell).is_none()
+    };
+    let name_row = name_row(rows, &is_name);
+    // Names of pairs stand above the axis of the pair.
+    let over_pairs = name_row.is_some_and(|row| rows.len() > 1 || names_pairs(&rows[row]));
     (0..width)
         .map(|column| {
             let cell = |row: &Vec<String>| row.get(column).cloned().unwrap_or_default();
             let cells: Vec<String> = rows.iter().map(cell).filter(|cell| !cell.is_empty()).collect();
             let own = |cell: &String| !is_unit_cell(cell) && axis_hint(cell).is_none();
             let mut name = name_row.map(|row| cell(&rows[row])).unwrap_or_default();
-            if name.is_empty() && rows.len() > 1 {
-                // Names of pairs stand above the axis of the pair.
+            if name.is_empty() && over_pairs {
                 let left = (column > 0)
                     .then(|| name_row.map(|row| rows[row].get(column - 1).cloned().unwrap_or_default()))
                     .flatten();
-                name = left.filter(own).unwrap_or_default();
+                name = left
+                    .filter(|left| name_row.is_some_and(|row| is_name(&rows[row], left)))
+                    .unwrap_or_default();
             }
             if name.is_empty() {
                 name = cells.iter().find(|cell| own(cell)).or(cells.first()).cloned().unwrap_or_default();
@@ -348,13 +377,9 @@ fn columns(rows: &[Vec<String>], width: usize) -> Vec<ColumnHeader> {
 }
 
 /// The row whose cells tell the columns apart best; the topmost of equals, units only when there is nothing else.
-fn name_row(rows: &[Vec<String>]) -> Option<usize> {
+fn name_row(rows: &[Vec<String>], is_name: &dyn Fn(&[String], &str) -> bool) -> Option<usize> {
     let distinct = |row: &[String]| {
-        let mut names: Vec<&str> = row
-            .iter()
-            .filter(|cell| !is_unit_cell(cell) && axis_hint(cell).is_none())
-            .map(String::as_str)
-            .collect();
+        let mut names: Vec<&str> = row.iter().map(String::as_str).filter(|cell| is_name(row, cell)).collect();
         names.sort_unstable();
         names.dedup();
         names.len()

@@ -84,6 +84,13 @@ pub(super) fn ask_columns(
     if let Some(index) = layout.index {
         draft.assume(format!("Column {} counts the rows and is not used.", places[index]));
     }
+    for &column in layout.no_numbers.iter().filter(|&&column| layout.role(column) != "value") {
+        draft.assume(format!(
+            "Column {} ({:?}) holds words, not numbers, and is not used.",
+            places[column],
+            name(column)
+        ));
+    }
     if layout.axis_by_numbers
         && let Some(axis) = layout.axis()
     {

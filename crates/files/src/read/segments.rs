@@ -1,5 +1,6 @@
 //! Which rows of numbers belong together: one table broken by damaged lines, or several tables one below the other.
 
+use super::header::header_line;
 use super::split::{cell_list, is_comment};
 use super::table::Table;
 use std::ops::Range;
@@ -65,6 +66,7 @@ pub(super) fn blocks(table: &Table<'_>, axis: Option<usize>) -> (Vec<Block>, Vec
     let order = axis.map_or(Order::None, |axis| run_order(table, main, axis));
     let mut blocks: Vec<Block> = Vec::new();
     let mut last: Option<f64> = None;
+    let mut named: Option<&str> = None;
     for run in runs {
         let first = axis.and_then(|axis| run.clone().find_map(|row| table.at(row, axis).number()));
         let goes_on = match (order, last, first) {
@@ -72,6 +74,10 @@ pub(super) fn blocks(table: &Table<'_>, axis: Option<usize>) -> (Vec<Block>, Vec
             (Order::Down, Some(last), Some(first)) => first <= last,
             _ => true,
         };
+        // A header of its own begins a table; the same header again, as on every printed page, does not.
+        let own = header_line(table.texts_before(run.start), table.separator, table.width);
+        let goes_on = goes_on && own.is_none_or(|own| named == Some(own));
+        named = own.or(named);
         let texts: Vec<_> =
             table.texts_before(run.start).iter().filter(|text| !is_comment(text.text)).collect();
         match blocks.last_mut() {

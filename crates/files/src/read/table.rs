@@ -44,6 +44,8 @@ pub(super) struct Table<'a> {
     pub(super) first_line: &'a str,
     /// Rows read with another separator than the rest, and the line of the first.
     pub(super) other_separator: Option<(usize, usize)>,
+    /// Columns of words, counted from 0.
+    pub(super) text_columns: Vec<usize>,
     /// Rows with more cells than the table has columns.
     pub(super) too_wide: usize,
 }
@@ -115,6 +117,7 @@ impl<'a> Table<'a> {
             separator,
             first_line: "",
             other_separator: None,
+            text_columns: Vec::new(),
             too_wide: 0,
         }
     }
@@ -132,6 +135,7 @@ impl<'a> Table<'a> {
             separator: dialect.separator,
             first_line: "",
             other_separator: None,
+            text_columns: dialect.text_columns.clone(),
             too_wide: 0,
         };
         let mut after_blank = false;
@@ -238,7 +242,12 @@ impl<'a> Table<'a> {
                     continue;
                 }
                 let mut row = Vec::new();
-                read_row(text.text, &Dialect { either_mark: true, ..dialect.clone() }, other, &mut row);
+                read_row(
+                    text.text,
+                    &Dialect { either_mark: true, text_columns: Vec::new(), ..dialect.clone() },
+                    other,
+                    &mut row,
+                );
                 if row.len() == self.width && count(&row) == (self.width, 0) {
                     before += usize::from(text.line < first);
                     found.push((index, row));
@@ -310,10 +319,13 @@ pub(super) fn read_row(line: &str, dialect: &Dialect, separator: Separator, into
         return;
     }
     let spaces = separator.spaces_group();
-    let limit = into.len() + MAX_WIDTH.min(MAX_NUMBERS);
+    let start = into.len();
+    let limit = start + MAX_WIDTH.min(MAX_NUMBERS);
     cells(line, separator, |token| {
         let mut one = cell(token, dialect.decimal, spaces);
-        if one == Cell::Word && dialect.either_mark {
+        if one == Cell::Word && dialect.text_columns.contains(&(into.len() - start)) {
+            one = Cell::Missing;
+        } else if one == Cell::Word && dialect.either_mark {
             one = cell(token, dialect.decimal.other(), spaces);
         }
         into.push(one);

@@ -60,8 +60,18 @@ fn read_into(draft: &mut Draft, stem: &str, text: &str, answers: &Answers) -> Re
             .number()
             .zip(table.at(main.start, 0).number())
             .is_some_and(|(b, a)| b - a == 1.0 && a <= 1.0);
-    let header = Header::read(table.texts_before(main.start), table.separator, table.width, indexed);
+    let mut header = Header::read(table.texts_before(main.start), table.separator, table.width, indexed);
     let mut layout = columns::assign(&table, &main, &header, answers).map_err(|sentence| (None, sentence))?;
+    // Damaged rows and remarks may stand before the longest run: its header is that of the table it goes on with.
+    let start = blocks(&table, layout.axis())
+        .0
+        .iter()
+        .find(|block| block.rows.iter().any(|rows| rows.contains(&main.start)))
+        .map_or(main.start, Block::first_row);
+    if start < main.start {
+        header = Header::read(table.texts_before(start), table.separator, table.width, indexed);
+        layout = columns::assign(&table, &main, &header, answers).map_err(|sentence| (None, sentence))?;
+    }
     // A table on its side reads as too few rows, or as rows without an axis column.
     if (main.len() < LEAST_ROWS
         || layout.axis().is_none()
@@ -71,13 +81,17 @@ fn read_into(draft: &mut Draft, stem: &str, text: &str, answers: &Answers) -> Re
     {
         return read_turned(draft, stem, &turned, &dialect, answers);
     }
+    if table.rows.len() <= 1
+        && let Some(row) = transposed::single(text, &dialect)
+    {
+        return read_row_alone(draft, stem, &row, &dialect, answers);
+    }
     if table.rows.is_empty() {
         return Err(no_rows(text, &table));
     }
     for sentence in &dialect.assumptions {
         draft.assume(sentence.clone());
     }
-    let mut header = header;
     let (mut parts, short) = blocks(&table, layout.axis());
     if let Some(row) = numeric_header(&table, &parts, &layout, &header) {
         let labels: Vec<String> = super::split::cell_list(table.first_line, table.separator)
@@ -192,6 +206,33 @@ fn count_line(table: &Table<'_>, parts: &mut [Block], layout: &Layout) -> Option
     }
     block.rows.first_mut()?.start += 1;
     Some(format!("Line {} counts the rows that follow and is no sample.", table.rows[first].line))
+}
+
+/// One row of values: the wavelengths are asked.
+fn read_row_alone(
+    draft: &mut Draft,
+    stem: &str,
+    row: &Turned,
+    dialect: &Dialect,
+    answers: &Answers,
+) -> Result<(), Refusal> {
+    let table = Table::upright(&row.columns, dialect.separator, row.line as u32);
+    let mut header = Header::from_labels(&row.labels);
+    header.columns[0].axis = None;
+    for note in &row.notes {
+        header.note(note);
+    }
+    for sentence in &dialect.assumptions {
+        draft.assume(sentence.clone());
+    }
+    draft.assume("The values stand in one row.");
+    let layout =
+        Layout { series: vec![columns::Series { axis: None, value: 0 }], values: 1, ..Layout::default() };
+    let block = Block { rows: vec![0..table.rows.len()], unreadable: 0, first_unreadable: 0 };
+    draft.facts.transposed = true;
+    draft.facts.first_data_line = row.line;
+    draft.facts.rows = 1;
+    read_table(draft, stem, &table, &[block], &header, &layout, dialect, answers, &row.places)
 }
 
 fn read_turned(

@@ -81,6 +81,23 @@ pub(super) fn find(text: &str, dialect: &Dialect) -> Option<Turned> {
     (turned.columns.len() > 1).then_some(turned)
 }
 
+/// The one row of numbers of a file that holds nothing else: values without wavelengths.
+pub(super) fn single(text: &str, dialect: &Dialect) -> Option<Turned> {
+    let mut notes = Vec::new();
+    let mut found: Option<(usize, String, Vec<Cell>)> = None;
+    for line in Lines::new(text) {
+        let (number, line) = line.ok()?;
+        match wide_row(line, dialect) {
+            Some(_) if found.is_some() => return None,
+            Some((label, cells)) => found = Some((number, label, cells)),
+            None if !line.trim().is_empty() && notes.len() < 500 => notes.push(line.to_owned()),
+            None => {}
+        }
+    }
+    let (line, label, cells) = found?;
+    Some(Turned { labels: vec![label], columns: vec![cells], places: vec![1], line, notes })
+}
+
 /// The label and the cells of a line that holds mostly numbers after at most two cells of words.
 fn wide_row(line: &str, dialect: &Dialect) -> Option<(String, Vec<Cell>)> {
     let separator = if matches!(dialect.separator, Separator::CommaPairs { .. }) {

@@ -208,7 +208,9 @@ pub(super) fn axis_hint(text: &str) -> Option<AxisHint> {
         && !lead.contains("density")
         && !lead.contains(" per ")
     {
-        let other_unit = folded.contains(['(', '[']) && unit.is_none();
+        let joules =
+            words(&folded).iter().any(|&word| matches!(word, "j" | "mj" | "uj" | "joule" | "joules"));
+        let other_unit = joules || folded.contains(['(', '[']) && unit.is_none();
         return (!other_unit).then_some(AxisHint {
             kind: AxisKind::Energy,
             unit: unit.filter(|unit| unit.0 == AxisUnit::Ev),

@@ -310,6 +310,8 @@ pub(super) fn not_emission(folded: &str) -> Option<&'static str> {
         return Some(name);
     }
     words(folded).iter().find_map(|&word| match word {
+        "db" | "dbm" | "log" | "log10" | "ln" | "lg" | "logarithmic" | "logarithm" => Some("a logarithm"),
+        "lm" | "lumen" | "lumens" | "lx" | "lux" => Some("a quantity weighted by the eye"),
         "abs" => Some("absorbance"),
         "%t" => Some("transmittance"),
         "%r" => Some("reflectance"),
