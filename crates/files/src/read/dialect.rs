@@ -158,7 +158,9 @@ struct Score {
 /// Columns of flags, remarks or times: at least five words and no number beside two numbers or more, in lines of the
 /// commonest length. Labels of a table on its side are no such column.
 fn text_columns(lines: &[(usize, &str)], separator: Separator) -> Vec<usize> {
-    let mut widths: Vec<(usize, usize, Vec<(usize, usize)>)> = Vec::new();
+    /// Numbers and words of one column.
+    type Kinds = (usize, usize);
+    let mut widths: Vec<(usize, usize, Vec<Kinds>)> = Vec::new();
     for (_, line) in lines {
         let mut kinds: Vec<Option<bool>> = Vec::new();
         cells(line, separator, |cell| {
@@ -406,7 +408,7 @@ fn count_marks(text: &str, dialect: &Dialect) -> Result<Vec<Marks>, OpenQuote> {
                     cell.contains(',') && cell.contains('.') || cell.matches([',', '.']).count() > 1,
                 )),
                 None if is_missing(cell) || dialect.text_columns.contains(&row.len()) => {
-                    row.push((None, false))
+                    row.push((None, false));
                 }
                 None => words = true,
             }

@@ -228,7 +228,8 @@ fn read_row_alone(
     draft.assume("The values stand in one row.");
     let layout =
         Layout { series: vec![columns::Series { axis: None, value: 0 }], values: 1, ..Layout::default() };
-    let block = Block { rows: vec![0..table.rows.len()], unreadable: 0, first_unreadable: 0 };
+    let all = 0..table.rows.len();
+    let block = Block { rows: vec![all], unreadable: 0, first_unreadable: 0 };
     draft.facts.transposed = true;
     draft.facts.first_data_line = row.line;
     draft.facts.rows = 1;
