@@ -8,11 +8,17 @@
 //! photon energy) and their usual widths are those of real emitters.
 
 use colour::shapes::{EnergyOrdinate, Shape};
-use device::sheet::{EqeModel, Sheet, VoltageModel};
-use device::{curve::Table, roll_off::TripletRollOff};
+use device::calibration::{ZoneRun, ZoneSetting};
+use device::conversion::{Conversion, Converter};
+use device::packages::{Packages, StringRule};
+use device::series_stack::{SeriesStack, StackUnit};
+use device::shared_zone::SharedZone;
+use device::sheet::{EqeModel, Package, Sheet, VoltageModel};
+use device::side_by_side::{Drive, Freedom, SideBySide, StripeLayout};
+use device::{Build, FormSettings, ShareKind, curve::Table, roll_off::TripletRollOff};
 use project::{
     Emitter, EmitterId, EmitterSet, Geometry, Import, Limit, Limits, Maximise, Member, Mounting, Origin,
-    Project, Region, SetId, WhiteSpec,
+    Project, RecipePlan, Region, SetId, WhiteSpec,
 };
 use std::error::Error;
 use std::path::Path;
@@ -23,7 +29,8 @@ const HC_EV_NM: f64 = 1239.842;
 fn main() -> Result<(), Box<dyn Error>> {
     let folder = std::env::args().nth(1).unwrap_or_else(|| "assets".to_owned());
     for (name, project) in [("night-ferry-cabin.ron", cabin()?), ("night-ferry-library.ron", library()?)] {
-        let project = solved(project)?;
+        let mut project = solved(project)?;
+        recipes(&mut project)?;
         let text = files::project_file::project_text(&project)?;
         std::fs::write(Path::new(&folder).join(name), text)?;
     }
@@ -115,6 +122,15 @@ fn cabin() -> Result<Project, Box<dyn Error>> {
     let finer = Limits { ra: Limit::at_least(95.0), r9: Limit::at_least(80.0), ..cabin.limits };
     add_set(&mut project, "Cabin, all seven", &all, &WhiteSpec { limits: finer, ..cabin.clone() });
     add_set(&mut project, "Deck corridor 4000 K", &five, &corridor);
+    let stair = WhiteSpec {
+        region: Region::Circle { steps: 3.0 },
+        limits: Limits::default(),
+        maximise: Maximise::Ler,
+        lumens: Some(90.0),
+        luminance_cd_per_m2: Some(1500.0),
+        ..cabin
+    };
+    add_set(&mut project, "Stair light, one zone", &["Kingfisher blue", "Fern green", "Rowan red"], &stair);
     project.current_set = project.sets.first().map(|set| set.id);
     Ok(project)
 }
@@ -151,6 +167,8 @@ fn library() -> Result<Project, Box<dyn Error>> {
         emitter.geometry = Geometry::Sphere;
         emitter.mounting = Mounting::SingleDevice;
         emitter.wall_plug = Some(wall_plug);
+        let volts = if name.ends_with("red") { 2.1 } else { 3.0 };
+        emitter.sheet = packaged(wall_plug, volts);
         project.emitters.push(emitter);
     }
     let six = ["Gannet blue", "Moss green", "Barley yellow", "Marigold", "Kestrel orange", "Poppy red"];
@@ -247,4 +265,158 @@ fn solved(mut project: Project) -> Result<Project, Box<dyn Error>> {
         }
     }
     Ok(project)
+}
+
+/// A small package at 65 mA: flux droops and voltage rises with current.
+fn packaged(wall_plug: f64, volts: f64) -> Sheet {
+    let currents = [0.5, 5.0, 20.0, 65.0, 120.0, 200.0];
+    let flux = |ma: f64| ma / 65.0 * (1.0 - 0.12 * (ma / 65.0).ln());
+    let forward = |ma: f64| volts + 0.14 * (ma / 65.0).ln();
+    let rounded = |value: f64| (1e4 * value).round() / 1e4;
+    Sheet {
+        package: Some(Package {
+            test_current_ma: Some(65.0),
+            radiant_flux_w: Some(rounded(wall_plug * volts * 0.065)),
+            maximum_current_ma: Some(200.0),
+            die_area_mm2: Some(0.36),
+            relative_flux: Some(Table::new(currents.iter().map(|&ma| (ma, rounded(flux(ma)))).collect())),
+            forward_voltage: Some(Table::new(
+                currents.iter().map(|&ma| (ma, rounded(forward(ma)))).collect(),
+            )),
+            ..Package::default()
+        }),
+        ..Sheet::default()
+    }
+}
+
+/// Between the demo projects a recipe of every build form, and two with down-conversion; each is worked out here.
+fn recipes(project: &mut Project) -> Result<(), Box<dyn Error>> {
+    let before = project.clone();
+    for index in 0..before.sets.len() {
+        let set = &before.sets[index];
+        let ids: Vec<EmitterId> = set.members.iter().map(|m| m.emitter).collect();
+        let name_of = |id: &EmitterId| before.emitter(*id).map(|e| e.name.clone()).unwrap_or_default();
+        let place = |name: &str| ids.iter().position(|id| name_of(id) == name);
+        let need = |name: &str| place(name).ok_or_else(|| format!("{} without {name}", set.name));
+        let plan = |name: &str, form: FormSettings| {
+            RecipePlan::new(name, ids.clone(), Build { form, ..Build::default() })
+        };
+        let plans = match set.name.as_str() {
+            "Cabin, five organic" => {
+                let mut stack = plan(
+                    "Ceiling panel, stacked",
+                    FormSettings::SeriesStack(SeriesStack {
+                        units: ["Rowan red", "Brass amber", "Fern green", "Reed teal", "Kingfisher blue"]
+                            .iter()
+                            .filter_map(|name| place(name))
+                            .map(|emitter| StackUnit { emitter, repeats: 1 })
+                            .collect(),
+                        junction_drop_v: Some(0.15),
+                        fill: Some(0.92),
+                        ..SeriesStack::default()
+                    }),
+                );
+                stack.thickness_nm = ids.iter().copied().zip([78.0, 82.0, 86.0, 94.0, 104.0]).collect();
+                vec![plan("Wall panel, striped", striped()), stack]
+            }
+            "Cabin, dots and perovskite" => {
+                let mut converted = plan("Wall panel, dots over blue", striped());
+                converted.build.conversions = vec![Conversion {
+                    pump: need("Kingfisher blue")?,
+                    layers: vec![
+                        converter(need("Ember red")?, 0.86, 0.020, 18.0),
+                        converter(need("Sedge lime")?, 0.91, 0.028, 22.0),
+                    ],
+                }];
+                vec![converted]
+            }
+            "Stair light, one zone" => {
+                vec![plan("Stair light, one zone", FormSettings::SharedZone(zone(&before, set, &ids)?))]
+            }
+            "Dusk 3500 K" => vec![plan(
+                "Reading lamp board",
+                FormSettings::Packages(Packages {
+                    at_most: Some(36),
+                    strings: Some(StringRule { lowest_v: 1.2, highest_v: 40.0, most_parallel: 2 }),
+                    ..Packages::default()
+                }),
+            )],
+            "Day 5000 K" => {
+                let mut board = plan(
+                    "Day board, phosphors over blue",
+                    FormSettings::Packages(Packages { at_most: Some(36), ..Packages::default() }),
+                );
+                let mut yellow = converter(need("Barley yellow")?, 0.93, 0.016, 60.0);
+                let marigold = need("Marigold")?;
+                yellow.relative_absorption = vec![(marigold, 0.02)];
+                board.build.conversions = vec![Conversion {
+                    pump: need("Gannet blue")?,
+                    layers: vec![converter(marigold, 0.88, 0.012, 40.0), yellow],
+                }];
+                vec![board]
+            }
+            _ => Vec::new(),
+        };
+        project.sets[index].recipes = plans;
+        for number in 0..project.sets[index].recipes.len() {
+            let set = &project.sets[index];
+            whitesmith::making::make(project, set.id, number)
+                .map_err(|error| format!("{}, {}: {error}", set.name, set.recipes[number].name))?;
+        }
+    }
+    Ok(())
+}
+
+fn striped() -> FormSettings {
+    FormSettings::SideBySide(SideBySide {
+        fill: Some(0.8),
+        drive: Drive::OwnCurrent(Freedom::LeastPower),
+        layout: Some(StripeLayout { pitch_um: 1500.0, gap_um: 30.0, minimum_um: 40.0 }),
+        ..SideBySide::default()
+    })
+}
+
+fn converter(emitter: usize, quantum_yield: f64, depth_per_percent_um: f64, thickness_um: f64) -> Converter {
+    Converter {
+        emitter,
+        quantum_yield,
+        depth_per_percent_um: Some(depth_per_percent_um),
+        thickness_um: Some(thickness_um),
+        ..Converter::default()
+    }
+}
+
+/// Six invented calibration runs round the dopings this white needs; the first emitter is the reference.
+fn zone(project: &Project, set: &EmitterSet, ids: &[EmitterId]) -> Result<SharedZone, Box<dyn Error>> {
+    let mut photons = Vec::new();
+    for (member, id) in set.members.iter().zip(ids) {
+        let emitter = project.emitter(*id).ok_or("an emitter of the set")?;
+        let light = colour::Tensor::of(&emitter.spectrum()?);
+        photons.push(member.share * light.mean_wavelength_nm());
+    }
+    // Dopings in wt% that make the white, slopes of the logarithm of the photon ratio, and what each run was set to.
+    let (doping, slope) = ([0.0, 0.55, 0.18], [0.0, 0.82, 0.74]);
+    let steps = [(0.7, 1.3), (0.85, 0.75), (1.0, 1.1), (1.15, 0.9), (1.3, 1.25), (0.95, 0.8)];
+    let scatter =
+        [(1.012, 0.991), (0.994, 1.009), (1.004, 0.996), (0.989, 1.006), (1.007, 1.011), (0.996, 0.988)];
+    let runs = steps.iter().zip(scatter).enumerate().map(|(k, (step, scatter))| {
+        let (step, scatter) = ([1.0, step.0, step.1], [1.0, scatter.0, scatter.1]);
+        let figure = |value: f64| (1e4 * value).round() / 1e4;
+        let seen: Vec<f64> =
+            (0..3).map(|i| photons[i] / photons[0] * f64::powf(step[i], slope[i]) * scatter[i]).collect();
+        let sum: f64 = seen.iter().sum();
+        ZoneRun {
+            id: format!("Z-{:03}", 41 + k),
+            current_ma_per_cm2: Some(2.0),
+            settings: (0..3)
+                .map(|i| ZoneSetting {
+                    concentration_percent: (i > 0).then(|| figure(doping[i] * step[i])),
+                    thickness_nm: Some([18.0, 10.0, 8.0][i]),
+                })
+                .collect(),
+            shares: seen.iter().map(|n| figure(n / sum)).collect(),
+            kind: ShareKind::Photon,
+        }
+    });
+    Ok(SharedZone { reference: 0, runs: runs.collect(), fill: Some(0.95), ..SharedZone::default() })
 }

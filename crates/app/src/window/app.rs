@@ -10,14 +10,16 @@ use super::session::{self, Session};
 use super::theme::{self, Palette};
 use super::view::{Bench, Proof, Scene, View};
 use super::wish::Wish;
-use super::{frontier, ledger, loom, top_bar};
+use super::{frontier, ledger, loom, recipe, top_bar};
 use crate::jobs::{Answer, Jobs};
+use crate::making::MakingError;
+use crate::making::best::{DeviceBest, best_for_device};
 use crate::state::demo::{CABIN, LIBRARY};
 use crate::state::derived::{Cache, Derived};
 use crate::state::{Edit, EditError, State};
 use egui::{Context, Event, Frame, Margin, Panel, Rect, RichText, Theme, Ui, ViewportCommand, pos2};
 use files::read::Reading;
-use project::{Project, SetId};
+use project::{Project, RecipePlan, SetId};
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
@@ -33,6 +35,8 @@ enum Done {
     Solved(Box<Option<Solved>>),
     Read(Box<Reading>),
     Frontier(Box<Option<frontier::Answer>>),
+    /// The set, the plan it was asked for, and the best blend of that device.
+    Device(SetId, Box<RecipePlan>, Box<Result<DeviceBest, MakingError>>),
 }
 
 /// An answer of the solver, and the shares it gave.
@@ -162,6 +166,7 @@ impl Window {
                 Answer::Done(Done::Solved(solved)) => self.solved(context, *solved),
                 Answer::Done(Done::Read(reading)) => self.imports.read(*reading),
                 Answer::Done(Done::Frontier(answer)) => self.view.frontier.take(*answer),
+                Answer::Done(Done::Device(set, plan, best)) => self.device_solved(context, set, &plan, *best),
                 Answer::Panicked(message) => {
                     self.say(context, format!("The work stopped unexpectedly: {message}"));
                 }
@@ -202,6 +207,14 @@ impl Window {
         self.view.dialog_open = self.view.details.is_some() || self.paths.is_open() || self.imports.is_open();
         let running = self.jobs.running();
         let mut view = std::mem::take(&mut self.view);
+        let mut derived = derived;
+        if view.bench == Bench::Recipe
+            && let Some(worked) = view.recipe.work(&self.state)
+            && let Some(project) = recipe::device_shares(&self.state, &worked)
+        {
+            // The ledger judges the light the device makes, not the blend it was asked for.
+            derived = Arc::new(self.cache.of_project(&project, self.state.revision()));
+        }
         {
             let scene = Scene {
                 palette: Palette::of(&context),
@@ -210,6 +223,7 @@ impl Window {
                 proof: self.proof(),
                 solving: self.jobs.progress_of("solve").map(|job| job.progress),
                 jobs: &running,
+                device_job: self.jobs.progress_of("device").is_some(),
             };
             draw(ui, &scene, &saved, &mut view, &mut wishes);
         }
@@ -341,6 +355,24 @@ impl Window {
             Command::SaveAs => self.ask_save(context),
             Command::Import => self.paths.ask(context, Purpose::ImportSpectra, ""),
             Command::Paste => context.send_viewport_cmd(ViewportCommand::RequestPaste),
+            Command::SolveDevice => self.solve_device(context),
+            Command::ExportReportPdf
+            | Command::ExportReportHtml
+            | Command::ExportRecipeRon
+            | Command::ExportRecipeCsv
+            | Command::ExportRecipeSpectrum
+            | Command::ExportRecipeTm27 => {
+                if let Some(purpose) = session::export_purpose(command) {
+                    let name = self.state.current_set().map_or("recipe", |set| set.name.as_str());
+                    let what = match purpose {
+                        Purpose::ReportPdf | Purpose::ReportHtml => "report",
+                        Purpose::RecipeRon | Purpose::RecipeCsv => "recipe",
+                        _ => "device spectrum",
+                    };
+                    let name = format!("{}.{}", file_name(&format!("{name} {what}")), purpose.ending());
+                    self.paths.ask(context, purpose, &name);
+                }
+            }
             Command::ExportSheetRon | Command::ExportSheetCsv | Command::ExportSpectrum => {
                 if let Some(purpose) = session::export_purpose(command) {
                     let name = self.state.current_set().map_or("blend", |set| set.name.as_str());
@@ -425,6 +457,21 @@ impl Window {
                 let Some(set) = self.state.current_set().map(|set| set.id) else { return };
                 let proof = self.proof().map(|proof| proof.words.clone());
                 let words = match session::export(&self.state, set, proof, purpose, first) {
+                    Ok(()) => format!("Written to {}.", first.display()),
+                    Err(problem) => problem,
+                };
+                self.say(context, words);
+            }
+            Purpose::ReportPdf
+            | Purpose::ReportHtml
+            | Purpose::RecipeRon
+            | Purpose::RecipeCsv
+            | Purpose::RecipeSpectrum
+            | Purpose::RecipeTm27 => {
+                let Some(set) = self.state.current_set().map(|set| set.id) else { return };
+                let proof = self.proof().map(|proof| proof.words.clone());
+                let plan = self.view.recipe.chosen;
+                let words = match session::export_recipe(&self.state, set, plan, proof.as_deref(), purpose, first) {
                     Ok(()) => format!("Written to {}.", first.display()),
                     Err(problem) => problem,
                 };
@@ -583,6 +630,51 @@ impl Window {
         context.request_repaint();
     }
 
+    /// Searches the best blend of the device on the Recipe bench.
+    fn solve_device(&mut self, context: &Context) {
+        let Some(set) = self.state.current_set() else { return };
+        self.view.bench = Bench::Recipe;
+        let plan = recipe::plan_on_bench(set, self.view.recipe.chosen);
+        let (id, project) = (set.id, self.state.project().clone());
+        self.state.end_gesture();
+        self.jobs.start("device", self.state.revision(), move |token| {
+            let cancelled = token.flag();
+            let control = optimiser::Control { progress: &|_| {}, cancelled: &cancelled };
+            let best = match project.set(id) {
+                Some(set) => best_for_device(&project, set, &plan, &control),
+                None => Err(MakingError::NoSet),
+            };
+            Done::Device(id, Box::new(plan), Box::new(best))
+        });
+        context.request_repaint();
+    }
+
+    fn device_solved(
+        &mut self,
+        context: &Context,
+        id: SetId,
+        plan: &RecipePlan,
+        best: Result<DeviceBest, MakingError>,
+    ) {
+        let best = match best {
+            Ok(best) => best,
+            Err(why) => return self.say(context, why.to_string()),
+        };
+        let Some(set) = self.state.project().set(id) else { return };
+        let place = set.recipes.iter().position(|other| other == plan);
+        if set.members.len() != best.shares.len() || (place.is_none() && !set.recipes.is_empty()) {
+            return self.say(context, "The device changed while searching: search again.".to_owned());
+        }
+        let mut edits = vec![Edit::Shares { set: id, shares: best.shares }];
+        if let Some(place) = place {
+            let mut recipes = set.recipes.clone();
+            recipes[place].made = None;
+            edits.push(Edit::Recipes { set: id, recipes });
+        }
+        self.apply(context, Edit::Together { label: "best blend for the device".to_owned(), edits });
+        self.say(context, best.sentence);
+    }
+
     fn solved(&mut self, context: &Context, solved: Option<Solved>) {
         let Some(solved) = solved else { return };
         let Some(set) = self.state.project().set(solved.set).cloned() else { return };
@@ -634,6 +726,7 @@ fn draw(ui: &mut Ui, scene: &Scene<'_>, saved: &str, view: &mut View, wishes: &m
     match view.bench {
         Bench::Mixing => ui.push_id("loom", |ui| loom::show(ui, loom_rect, scene, view, wishes)),
         Bench::Frontier => ui.push_id("frontier", |ui| frontier::show(ui, loom_rect, scene, view, wishes)),
+        Bench::Recipe => ui.push_id("recipe", |ui| recipe::show(ui, loom_rect, scene, view, wishes)),
     };
     ui.push_id("ledger", |ui| ledger::show(ui, ledger_rect, scene, view, wishes));
     dialogs::emitter::show(ui, scene, view, wishes);

@@ -17,6 +17,13 @@ pub(super) enum Command {
     ExportSheetRon,
     ExportSheetCsv,
     ExportSpectrum,
+    ExportReportPdf,
+    ExportReportHtml,
+    ExportRecipeRon,
+    ExportRecipeCsv,
+    ExportRecipeSpectrum,
+    ExportRecipeTm27,
+    SolveDevice,
     Undo,
     Redo,
     Solve,
@@ -32,7 +39,7 @@ pub(super) enum Command {
 
 impl Command {
     /// All commands with a key.
-    const KEYED: [Self; 12] = [
+    const KEYED: [Self; 13] = [
         Self::SaveAs,
         Self::Save,
         Self::Open,
@@ -44,6 +51,7 @@ impl Command {
         Self::HoldWhite,
         Self::Show(Bench::Mixing),
         Self::Show(Bench::Frontier),
+        Self::Show(Bench::Recipe),
         Self::Quit,
     ];
 
@@ -61,6 +69,13 @@ impl Command {
             Self::ExportSheetRon => "Blend sheet (RON)\u{2026}",
             Self::ExportSheetCsv => "Blend sheet (CSV)\u{2026}",
             Self::ExportSpectrum => "Predicted spectrum (CSV)\u{2026}",
+            Self::ExportReportPdf => "Report (PDF)\u{2026}",
+            Self::ExportReportHtml => "Report (HTML)\u{2026}",
+            Self::ExportRecipeRon => "Recipe (RON)\u{2026}",
+            Self::ExportRecipeCsv => "Recipe (CSV)\u{2026}",
+            Self::ExportRecipeSpectrum => "Predicted spectrum of the device (CSV)\u{2026}",
+            Self::ExportRecipeTm27 => "Predicted spectrum of the device (TM-27)\u{2026}",
+            Self::SolveDevice => "Best blend for this device",
             Self::Undo => "Undo",
             Self::Redo => "Redo",
             Self::Solve => "Solve",
@@ -91,6 +106,7 @@ impl Command {
             Self::HoldWhite => KeyboardShortcut::new(Modifiers::COMMAND, Key::H),
             Self::Show(Bench::Mixing) => KeyboardShortcut::new(Modifiers::COMMAND, Key::Num1),
             Self::Show(Bench::Frontier) => KeyboardShortcut::new(Modifiers::COMMAND, Key::Num2),
+            Self::Show(Bench::Recipe) => KeyboardShortcut::new(Modifiers::COMMAND, Key::Num3),
             Self::Quit => KeyboardShortcut::new(Modifiers::COMMAND, Key::Q),
             _ => return None,
         })

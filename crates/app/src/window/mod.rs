@@ -19,6 +19,7 @@ mod notice;
 mod paint;
 mod plots;
 mod proof;
+mod recipe;
 mod session;
 pub mod theme;
 mod top_bar;

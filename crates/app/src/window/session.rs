@@ -132,8 +132,48 @@ pub(super) const fn export_purpose(command: Command) -> Option<Purpose> {
         Command::ExportSheetRon => Some(Purpose::SheetRon),
         Command::ExportSheetCsv => Some(Purpose::SheetCsv),
         Command::ExportSpectrum => Some(Purpose::SpectrumCsv),
+        Command::ExportReportPdf => Some(Purpose::ReportPdf),
+        Command::ExportReportHtml => Some(Purpose::ReportHtml),
+        Command::ExportRecipeRon => Some(Purpose::RecipeRon),
+        Command::ExportRecipeCsv => Some(Purpose::RecipeCsv),
+        Command::ExportRecipeSpectrum => Some(Purpose::RecipeSpectrum),
+        Command::ExportRecipeTm27 => Some(Purpose::RecipeTm27),
         _ => None,
     }
+}
+
+/// Writes a recipe, its spectrum or its report.
+pub(super) fn export_recipe(
+    state: &State,
+    set: SetId,
+    plan: usize,
+    proof: Option<&str>,
+    purpose: Purpose,
+    path: &Path,
+) -> Result<(), String> {
+    use crate::headless::recipe::{spectrum_csv, spectrum_tm27};
+    let project = state.project();
+    let making = crate::making::make(project, set, plan).map_err(|e| e.to_string())?;
+    let report = || {
+        let seconds = std::time::SystemTime::now()
+            .duration_since(std::time::UNIX_EPOCH)
+            .map_or(0, |since| since.as_secs());
+        let note = project.set(set).map_or("", |set| set.note.as_str());
+        let proof = proof.unwrap_or(note);
+        crate::making::report::of_making(project, &making, &crate::making::report::day(seconds), proof)
+    };
+    let text = |text: Result<String, String>| text.map(String::into_bytes);
+    let bytes = match purpose {
+        Purpose::ReportPdf => files::report::pdf::pages(&report()).map_err(|e| e.to_string())?,
+        Purpose::ReportHtml => files::report::html::page(&report()).into_bytes(),
+        Purpose::RecipeRon => text(making.document(project).to_ron().map_err(|e| e.to_string()))?,
+        Purpose::RecipeCsv => text(making.document(project).to_csv().map_err(|e| e.to_string()))?,
+        Purpose::RecipeTm27 => {
+            text(spectrum_tm27(&making, &making.document(project)).map_err(|e| e.to_string()))?
+        }
+        _ => spectrum_csv(&making).into_bytes(),
+    };
+    save(path, &bytes, None).map(|_| ()).map_err(|e| e.to_string())
 }
 
 /// Writes an export.

@@ -217,7 +217,15 @@ fn main_menu(ui: &mut Ui, scene: &Scene<'_>, wishes: &mut Vec<Wish>) {
         ui,
         "Give out",
         exportable,
-        &[Command::ExportSheetRon, Command::ExportSheetCsv, Command::ExportSpectrum],
+        &[
+            Command::ExportSheetRon,
+            Command::ExportSheetCsv,
+            Command::ExportSpectrum,
+            Command::ExportRecipeRon,
+            Command::ExportRecipeCsv,
+            Command::ExportReportPdf,
+            Command::ExportReportHtml,
+        ],
     );
     group(ui, "Look around", true, &[Command::OpenDemo, Command::OpenLibrary]);
     group(ui, "", true, &[Command::Quit]);

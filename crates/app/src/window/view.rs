@@ -3,6 +3,7 @@
 use super::dialogs::emitter::Details;
 use super::frontier::Frontier;
 use super::loom::Pull;
+use super::recipe::RecipeView;
 use super::theme::Palette;
 use crate::jobs::Running;
 use crate::state::derived::Derived;
@@ -21,6 +22,8 @@ pub(super) struct Scene<'a> {
     pub(super) solving: Option<f64>,
     /// The jobs that have not ended.
     pub(super) jobs: &'a [Running],
+    /// True while the best blend of a device is searched.
+    pub(super) device_job: bool,
 }
 
 /// The benches along the top.
@@ -29,17 +32,19 @@ pub(super) enum Bench {
     #[default]
     Mixing,
     Frontier,
+    Recipe,
 }
 
 impl Bench {
     /// All of them, in the order of their tabs.
-    pub(super) const ALL: [Self; 2] = [Self::Mixing, Self::Frontier];
+    pub(super) const ALL: [Self; 3] = [Self::Mixing, Self::Frontier, Self::Recipe];
 
     /// The word on its tab.
     pub(super) const fn words(self) -> &'static str {
         match self {
             Self::Mixing => "Mixing",
             Self::Frontier => "Frontier",
+            Self::Recipe => "Recipe",
         }
     }
 }
@@ -78,8 +83,6 @@ pub(super) enum Section {
 /// The window's own state.
 #[derive(Debug)]
 pub(super) struct View {
-    /// The bench that is shown.
-    pub(super) bench: Bench,
     /// What the Frontier bench remembers.
     pub(super) frontier: Frontier,
     /// Pulling moves along the blends that keep the white.
@@ -100,12 +103,15 @@ pub(super) struct View {
     pub(super) details: Option<Details>,
     /// A dialog covers the benches.
     pub(super) dialog_open: bool,
+    /// The bench that is shown.
+    pub(super) bench: Bench,
+    /// What is open on the Recipe bench.
+    pub(super) recipe: RecipeView,
 }
 
 impl Default for View {
     fn default() -> Self {
         Self {
-            bench: Bench::default(),
             frontier: Frontier::default(),
             hold_white: false,
             pull: None,
@@ -116,6 +122,8 @@ impl Default for View {
             open_by_room: true,
             details: None,
             dialog_open: false,
+            bench: Bench::default(),
+            recipe: RecipeView::default(),
         }
     }
 }

@@ -8,5 +8,6 @@ mod correct;
 mod jobs;
 mod measure;
 mod read;
+mod recipe;
 mod solve;
 mod support;

@@ -20,6 +20,12 @@ pub(in crate::window) enum Purpose {
     SheetRon,
     SheetCsv,
     SpectrumCsv,
+    ReportPdf,
+    ReportHtml,
+    RecipeRon,
+    RecipeCsv,
+    RecipeSpectrum,
+    RecipeTm27,
 }
 
 impl Purpose {
@@ -29,14 +35,20 @@ impl Purpose {
             Self::SaveProject => "Save project as",
             Self::ImportSpectra => "Import spectra",
             Self::SheetRon | Self::SheetCsv => "Save blend sheet as",
-            Self::SpectrumCsv => "Save predicted spectrum as",
+            Self::SpectrumCsv | Self::RecipeSpectrum | Self::RecipeTm27 => "Save predicted spectrum as",
+            Self::ReportPdf | Self::ReportHtml => "Save report as",
+            Self::RecipeRon | Self::RecipeCsv => "Save recipe as",
         }
     }
 
     /// The ending of files written.
     pub(in crate::window) const fn ending(self) -> &'static str {
         match self {
-            Self::OpenProject | Self::SaveProject | Self::SheetRon => "ron",
+            Self::OpenProject | Self::SaveProject | Self::SheetRon | Self::RecipeRon => "ron",
+            Self::ReportPdf => "pdf",
+            Self::ReportHtml => "html",
+            Self::RecipeTm27 => "spdx",
+            Self::RecipeCsv | Self::RecipeSpectrum => "csv",
             Self::ImportSpectra => "",
             Self::SheetCsv | Self::SpectrumCsv => "csv",
         }
