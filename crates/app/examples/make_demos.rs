@@ -270,7 +270,7 @@ fn solved(mut project: Project) -> Result<Project, Box<dyn Error>> {
 /// A small package at 65 mA: flux droops and voltage rises with current.
 fn packaged(wall_plug: f64, volts: f64) -> Sheet {
     let currents = [0.5, 5.0, 20.0, 65.0, 120.0, 200.0];
-    let flux = |ma: f64| ma / 65.0 * (1.0 - 0.12 * (ma / 65.0).ln());
+    let flux = |ma: f64| ma / 65.0 * (1.12 - 0.12 * (ma / 65.0).sqrt());
     let forward = |ma: f64| volts + 0.14 * (ma / 65.0).ln();
     let rounded = |value: f64| (1e4 * value).round() / 1e4;
     Sheet {
