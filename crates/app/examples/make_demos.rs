@@ -123,7 +123,7 @@ fn cabin() -> Result<Project, Box<dyn Error>> {
     add_set(&mut project, "Cabin, all seven", &all, &WhiteSpec { limits: finer, ..cabin.clone() });
     add_set(&mut project, "Deck corridor 4000 K", &five, &corridor);
     let stair = WhiteSpec {
-        region: Region::Circle { steps: 3.0 },
+        region: Region::Point,
         limits: Limits::default(),
         maximise: Maximise::Ler,
         lumens: Some(90.0),
