@@ -246,7 +246,7 @@ fn light(ui: &Ui, rect: Rect, making: &Making, worked: &Worked, scene: &Scene<'_
         Stroke::new(1.0, palette.rule),
         StrokeKind::Inside,
     );
-    let inner = plot.shrink2(vec2(8.0, 8.0));
+    let inner = Rect::from_min_max(plot.min + vec2(8.0, 8.0), plot.max - vec2(8.0, 20.0));
     let peak = worked.curve.iter().copied().fold(1e-12, f64::max);
     let at = |nm: usize, power: f64| {
         pos2(
