@@ -471,10 +471,11 @@ impl Window {
                 let Some(set) = self.state.current_set().map(|set| set.id) else { return };
                 let proof = self.proof().map(|proof| proof.words.clone());
                 let plan = self.view.recipe.chosen;
-                let words = match session::export_recipe(&self.state, set, plan, proof.as_deref(), purpose, first) {
-                    Ok(()) => format!("Written to {}.", first.display()),
-                    Err(problem) => problem,
-                };
+                let words =
+                    match session::export_recipe(&self.state, set, plan, proof.as_deref(), purpose, first) {
+                        Ok(()) => format!("Written to {}.", first.display()),
+                        Err(problem) => problem,
+                    };
                 self.say(context, words);
             }
         }
