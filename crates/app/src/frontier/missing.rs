@@ -11,6 +11,9 @@ const PEAKS_NM: (f64, f64, usize) = (420.0, 6.5, 41);
 /// Full widths at half maximum tried, nm.
 const WIDTHS_NM: (f64, f64, usize) = (15.0, 6.0, 15);
 
+/// lm/W from which an emitter counts as a help.
+const HELPS: f64 = 0.05;
+
 /// One emitter proposed.
 #[derive(Debug, Clone, PartialEq)]
 pub struct Proposal {
@@ -99,6 +102,10 @@ pub fn missing(project: &Project, set: SetId, aim: Aim, token: &Token) -> Option
         .iter()
         .filter_map(|proposal| {
             let solution = proposal.outcome.solution()?;
+            let gain = answer.without.map_or(f64::INFINITY, |without| solution.objective - without);
+            if gain < HELPS {
+                return None;
+            }
             let mut one = Proposal {
                 peak_nm: proposal.peak_nm,
                 width_nm: proposal.width_nm,
@@ -153,7 +160,7 @@ impl Missing {
         let gain = self.without.map(|without| value - without);
         match gain {
             None => format!("{} lm/W, where there is no blend without it", number(value, 1)),
-            Some(gain) if gain < 0.05 => format!("{} lm/W, no better than without it", number(value, 1)),
+            Some(gain) if gain < HELPS => format!("{} lm/W, no better than without it", number(value, 1)),
             Some(gain) => format!("{} lm/W, {} more than without it", number(value, 1), number(gain, 1)),
         }
     }
@@ -173,10 +180,10 @@ impl Missing {
         let (Some(first), Some(last)) = (self.peaks_nm.first(), self.peaks_nm.last()) else {
             return String::new();
         };
-        let best = self.proposals.first().map_or_else(
-            || "none of them meets the limits".to_owned(),
-            |best| format!("best {}", best.words),
-        );
+        let best = self
+            .proposals
+            .first()
+            .map_or_else(|| "none of them helps".to_owned(), |best| format!("best {}", best.words));
         format!(
             "Map of the lm/W with one emitter more, peaks from {} to {} nm and widths from {} to {} nm: {best}.",
             number(*first, 0),

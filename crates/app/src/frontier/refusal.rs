@@ -9,8 +9,6 @@ use project::{EmitterSet, Metric, WhiteSpec};
 pub struct Refusal {
     /// The reason in sentences.
     pub words: String,
-    /// What the nearest blend is short of, in words; empty when the white itself is out of reach.
-    pub short: Vec<String>,
     /// Shares of the whole set that come nearest, where they make a blend.
     pub nearest: Option<Vec<f64>>,
     /// One limit each, relaxed so far that a blend exists.
@@ -31,7 +29,7 @@ pub struct Relax {
 impl Refusal {
     /// From the optimiser's answer about a set; `members` are the indices of those that took part.
     pub fn of(infeasible: &Infeasible, set: &EmitterSet, members: &[usize]) -> Self {
-        let mut words = infeasible.explanation.clone();
+        let mut words = true_minus(&infeasible.explanation);
         if !infeasible.proven {
             words.push_str(" (None was found; that none exists is not proven.)");
         }
@@ -54,26 +52,36 @@ impl Refusal {
                 Some(Relax { metric, words, white })
             })
             .collect();
-        let short = infeasible
-            .nearest
-            .shortfalls
-            .iter()
-            .map(|short| {
-                let asked = match (short.by < 0.0, short.range.low, short.range.high) {
-                    (true, Some(low), _) => format!("at least {}", tenth(low)),
-                    (false, _, Some(high)) => format!("at most {}", tenth(high)),
-                    _ => "its range".to_owned(),
-                };
-                format!("{} {} of {asked}", short.metric.title(), tenth(short.value))
-            })
-            .collect();
         let shares = whole(set, members, &infeasible.nearest.shares);
         let is_blend = (shares.iter().sum::<f64>() - 1.0).abs() < 1e-6;
-        Self { words, short, nearest: is_blend.then_some(shares), relaxations }
+        Self { words, nearest: is_blend.then_some(shares), relaxations }
     }
 }
 
 fn tenth(value: f64) -> String {
     let text = number(value, 1);
     text.strip_suffix(".0").map_or(text.clone(), str::to_owned)
+}
+
+/// Typewriter minus signs before figures as true ones.
+fn true_minus(words: &str) -> String {
+    let mut out = String::with_capacity(words.len());
+    let mut rest = words.chars().peekable();
+    let mut before = ' ';
+    while let Some(c) = rest.next() {
+        let is_sign = c == '-' && before == ' ' && rest.peek().is_some_and(char::is_ascii_digit);
+        out.push(if is_sign { '\u{2212}' } else { c });
+        before = c;
+    }
+    out
+}
+
+#[cfg(test)]
+mod tests {
+    use super::true_minus;
+
+    #[test]
+    fn signs_become_true_minus_signs_and_hyphens_stay() {
+        assert_eq!(true_minus("R9 -94.35 of a well-known 1-2"), "R9 \u{2212}94.35 of a well-known 1-2");
+    }
 }

@@ -101,7 +101,7 @@ pub struct Trade {
     pub aim: Aim,
     /// The spec as it stands.
     pub spec: Spec,
-    /// The curve by ascending level; the limits of the metric and of lm/W are left out, all others kept.
+    /// The curve by ascending level; the floor of the metric and the limits of lm/W are left out, all others kept.
     pub curve: Vec<Point>,
     /// Why there is no curve.
     pub no_curve: Option<Refusal>,
@@ -146,7 +146,10 @@ pub fn trade(project: &Project, set: SetId, metric: Metric, aim: Aim, token: &To
     let mut range = open.limits.get(along);
     range.low = None;
     open.limits.set(along, range);
-    open.limits.set(solving::metric(aim.metric()), Range::OPEN);
+    // Either kind of lm/W follows from the curve: a floor under one of them is a line, not a constraint.
+    for own in [Metric::Ler, Metric::Efficacy] {
+        open.limits.set(solving::metric(own), Range::OPEN);
+    }
     let step = done(0.0, 0.5);
     let control = Control { progress: &step, cancelled: &cancelled };
     let points = match optimiser::frontier(&open, along, &Levels::Adaptive(POINTS), &control) {
@@ -283,10 +286,11 @@ impl Trade {
         };
         let proven = self.curve.iter().filter(|point| point.grade == Grade::Proven).count();
         format!(
-            "{} against {}: {} points, from {} at {} {} to {} at {} {}; {proven} of them proven.",
+            "{} against {}: {} point{}, from {} at {} {} to {} at {} {}; {proven} of them proven.",
             self.aim.words(),
             title(self.metric),
             self.curve.len(),
+            if self.curve.len() == 1 { "" } else { "s" },
             number(first.objective, 1),
             title(self.metric),
             number(first.level, 1),

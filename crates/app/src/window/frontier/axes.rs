@@ -73,11 +73,9 @@ impl Axes {
 
 /// A range with some room at both ends; never empty.
 pub(super) fn roomy(low: f64, high: f64, part: f64) -> (f64, f64) {
-    let span = high - low;
-    if span > 1e-9 {
-        (low - part * span, high + part * span)
-    } else {
-        let room = (low.abs() * 0.01).max(1.0);
-        (low - room, high + room)
-    }
+    // Less than that is rounding, and would be drawn as a slope.
+    let least = 0.004 * low.abs().max(high.abs()).max(1.0);
+    let middle = (low + high) / 2.0;
+    let half = (high - low).max(least) * (0.5 + part);
+    (middle - half, middle + half)
 }

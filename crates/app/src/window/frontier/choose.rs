@@ -75,74 +75,80 @@ fn picks(ui: &mut Ui, rect: Rect, scene: &Scene<'_>, choice: &Choice, current: u
     let palette = scene.palette;
     let best = choice.picks[0].objective;
     let mut asked = None;
-    ui.scope_builder(UiBuilder::new().max_rect(rect), |ui| {
+    ui.scope_builder(UiBuilder::new().max_rect(rect).id_salt("choices"), |ui| {
         ui.spacing_mut().item_spacing.y = 0.0;
-        ScrollArea::vertical().auto_shrink(false).show_rows(ui, ROW, choice.picks.len(), |ui, rows| {
-            for k in rows {
-                let pick = &choice.picks[k];
-                let (row, response) = ui.allocate_exact_size(vec2(ui.available_width(), ROW), Sense::click());
-                let names: Vec<&str> = pick.rows.iter().map(|row| row.name.as_str()).collect();
-                let names = names.join(", ");
-                let spoken = format!("Choice {}: {names}, {} lm/W", k + 1, fixed(pick.objective, 1));
-                let chosen = k == current;
-                response.widget_info(|| WidgetInfo::selected(Role::ListBoxOption, true, chosen, &spoken));
-                let painter = ui.painter().clone();
-                if chosen {
-                    painter.rect_filled(row, CornerRadius::same(4), palette.accent_wash);
-                    let mark = Rect::from_min_size(row.min, vec2(3.0, row.height()));
-                    painter.rect_filled(mark, CornerRadius::ZERO, palette.accent);
-                } else if response.hovered() {
-                    painter.rect_filled(row, CornerRadius::same(4), palette.well);
+        ScrollArea::vertical().id_salt("choices").auto_shrink(false).show_rows(
+            ui,
+            ROW,
+            choice.picks.len(),
+            |ui, rows| {
+                for k in rows {
+                    let pick = &choice.picks[k];
+                    let (row, response) =
+                        ui.allocate_exact_size(vec2(ui.available_width(), ROW), Sense::click());
+                    let names: Vec<&str> = pick.rows.iter().map(|row| row.name.as_str()).collect();
+                    let names = names.join(", ");
+                    let spoken = format!("Choice {}: {names}, {} lm/W", k + 1, fixed(pick.objective, 1));
+                    let chosen = k == current;
+                    response.widget_info(|| WidgetInfo::selected(Role::ListBoxOption, true, chosen, &spoken));
+                    let painter = ui.painter().clone();
+                    if chosen {
+                        painter.rect_filled(row, CornerRadius::same(4), palette.accent_wash);
+                        let mark = Rect::from_min_size(row.min, vec2(3.0, row.height()));
+                        painter.rect_filled(mark, CornerRadius::ZERO, palette.accent);
+                    } else if response.hovered() {
+                        painter.rect_filled(row, CornerRadius::same(4), palette.well);
+                    }
+                    painter.hline(row.x_range(), row.bottom() - 0.5, Stroke::new(1.0, palette.grid));
+                    let y = row.center().y;
+                    let rank = format!("{}", k + 1);
+                    write(
+                        &painter,
+                        pos2(row.left() + 30.0, y),
+                        Align2::RIGHT_CENTER,
+                        rank,
+                        text::strong(),
+                        palette.muted,
+                    );
+                    let right = row.right() - 12.0;
+                    write(
+                        &painter,
+                        pos2(right, y - 8.0),
+                        Align2::RIGHT_CENTER,
+                        format!("{} lm/W", fixed(pick.objective, 1)),
+                        text::small_strong(),
+                        palette.ink,
+                    );
+                    let behind = if k == 0 {
+                        "best".to_owned()
+                    } else {
+                        let behind = signed(pick.objective - best, 1);
+                        if behind == "0.0" { "as good".to_owned() } else { behind }
+                    };
+                    write(
+                        &painter,
+                        pos2(right, y + 9.0),
+                        Align2::RIGHT_CENTER,
+                        behind,
+                        text::small(),
+                        palette.muted,
+                    );
+                    let left = row.left() + 42.0;
+                    let galley =
+                        painter.layout(names, text::small(), palette.ink, (right - 84.0 - left).max(60.0));
+                    let top = y - galley.size().y.min(ROW - 4.0) / 2.0;
+                    painter.with_clip_rect(row.intersect(ui.clip_rect())).galley(
+                        pos2(left, top),
+                        galley,
+                        palette.ink,
+                    );
+                    focus_ring(ui, &response, 4);
+                    if response.clicked() {
+                        asked = Some(k);
+                    }
                 }
-                painter.hline(row.x_range(), row.bottom() - 0.5, Stroke::new(1.0, palette.grid));
-                let y = row.center().y;
-                let rank = format!("{}", k + 1);
-                write(
-                    &painter,
-                    pos2(row.left() + 30.0, y),
-                    Align2::RIGHT_CENTER,
-                    rank,
-                    text::strong(),
-                    palette.muted,
-                );
-                let right = row.right() - 12.0;
-                write(
-                    &painter,
-                    pos2(right, y - 8.0),
-                    Align2::RIGHT_CENTER,
-                    format!("{} lm/W", fixed(pick.objective, 1)),
-                    text::small_strong(),
-                    palette.ink,
-                );
-                let behind = if k == 0 {
-                    "best".to_owned()
-                } else {
-                    let behind = signed(pick.objective - best, 1);
-                    if behind == "0.0" { "as good".to_owned() } else { behind }
-                };
-                write(
-                    &painter,
-                    pos2(right, y + 9.0),
-                    Align2::RIGHT_CENTER,
-                    behind,
-                    text::small(),
-                    palette.muted,
-                );
-                let left = row.left() + 42.0;
-                let galley =
-                    painter.layout(names, text::small(), palette.ink, (right - 84.0 - left).max(60.0));
-                let top = y - galley.size().y.min(ROW - 4.0) / 2.0;
-                painter.with_clip_rect(row.intersect(ui.clip_rect())).galley(
-                    pos2(left, top),
-                    galley,
-                    palette.ink,
-                );
-                focus_ring(ui, &response, 4);
-                if response.clicked() {
-                    asked = Some(k);
-                }
-            }
-        });
+            },
+        );
     });
     asked
 }

@@ -107,6 +107,7 @@ impl Ask {
 pub(super) struct Frontier {
     tool: Tool,
     metric: Metric,
+    metric_by_hand: bool,
     /// Chosen by hand; otherwise it follows the spec.
     aim: Option<Aim>,
     count: usize,
@@ -131,6 +132,7 @@ impl Default for Frontier {
         Self {
             tool: Tool::Trade,
             metric: Metric::Ra,
+            metric_by_hand: false,
             aim: None,
             count: 4,
             as_table: false,
@@ -224,6 +226,9 @@ pub(super) fn show(ui: &mut Ui, rect: Rect, scene: &Scene<'_>, view: &mut View, 
     // The curve of a set comes by itself the first time; after that it is asked for.
     if bench.tool == Tool::Trade && bench.drawn_for != Some(set.id) {
         bench.drawn_for = Some(set.id);
+        if !bench.metric_by_hand {
+            bench.metric = tightest(scene, set);
+        }
         if bench.answer(aim) != Some(true) {
             wishes.push(Wish::Frontier(bench.ask(set.id, aim)));
         }
@@ -236,6 +241,20 @@ pub(super) fn show(ui: &mut Ui, rect: Rect, scene: &Scene<'_>, view: &mut View, 
         Tool::Choose => choose::show(ui, body, scene, bench, (aim, fresh), wishes),
         Tool::Missing => missing::show(ui, body, scene, bench),
     }
+}
+
+/// The rendering metric with the least to spare over its floor in the present blend; Ra without any floor.
+fn tightest(scene: &Scene<'_>, set: &EmitterSet) -> Metric {
+    let spare = |metric: &Metric| {
+        let floor = set.white.limits.of(*metric).low?;
+        let line = scene.derived.ledger.iter().find(|line| line.key == metric.key())?;
+        line.value.map(|value| value - floor)
+    };
+    data::RENDERING
+        .into_iter()
+        .filter_map(|metric| Some((metric, spare(&metric)?)))
+        .min_by(|a, b| a.1.total_cmp(&b.1))
+        .map_or(Metric::Ra, |(metric, _)| metric)
 }
 
 fn heading(

@@ -78,8 +78,19 @@ pub(super) fn show(
         let at = axes.at(x, y);
         diamond(&inside, at, &palette);
         let right = at.x < axes.field.center().x;
+        // Above the curve, which falls to the right.
         let (side, anchor) = if right { (11.0, Align2::LEFT_CENTER) } else { (-11.0, Align2::RIGHT_CENTER) };
-        halo(&inside, at + vec2(side, 11.0), anchor, "present blend", palette.well, palette.ink);
+        let lift = if right { -14.0 } else { 14.0 };
+        halo(&inside, at + vec2(side, lift), anchor, "present blend", palette.well, palette.ink);
+    }
+    if let [only] = trade.curve.as_slice() {
+        let words = format!(
+            "{} {} costs nothing, and the other limits leave no more of it.",
+            title(trade.metric),
+            fixed(only.level, 1)
+        );
+        let at = axes.field.center_bottom() - vec2(0.0, 30.0);
+        halo(&inside, at, Align2::CENTER_BOTTOM, &words, palette.well, palette.ink);
     }
     legend(&painter, &axes, trade, &palette);
     interact(ui, &axes, trade, &line, chosen)

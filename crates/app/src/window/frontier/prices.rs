@@ -24,8 +24,8 @@ pub(super) fn show(
     wishes: &mut Vec<Wish>,
 ) {
     let palette = scene.palette;
-    ui.scope_builder(UiBuilder::new().max_rect(rect), |ui| {
-        ScrollArea::vertical().auto_shrink(false).show(ui, |ui| {
+    ui.scope_builder(UiBuilder::new().max_rect(rect).id_salt("prices"), |ui| {
+        ScrollArea::vertical().id_salt("prices").auto_shrink(false).show(ui, |ui| {
             ui.set_max_width(rect.width() - 8.0);
             ui.spacing_mut().item_spacing.y = 5.0;
             heading(ui, "The spec as it stands", &palette);
@@ -119,9 +119,6 @@ fn refused(
         let at = pos2(head.left() + 20.0, head.center().y);
         write(ui.painter(), at, Align2::LEFT_CENTER, "No blend meets it", text::strong(), palette.short);
         ui.label(RichText::new(&refusal.words).font(text::small()).color(palette.ink));
-        if !refusal.short.is_empty() {
-            small(ui, &format!("The nearest blend has {}.", refusal.short.join(", ")), palette);
-        }
         for way in ways_out(refusal, set.id) {
             let words = RichText::new(&way.words).font(text::small_strong()).color(palette.accent);
             let hint = if way.solve {

@@ -33,45 +33,51 @@ pub(super) fn show(ui: &mut Ui, rect: Rect, trade: &Trade, chosen: Option<usize>
     painter.hline(rect.x_range(), head.bottom(), Stroke::new(1.0, palette.muted));
     let body = Rect::from_min_max(pos2(rect.left(), head.bottom() + 1.0), rect.max);
     let mut asked = None;
-    ui.scope_builder(UiBuilder::new().max_rect(body), |ui| {
+    ui.scope_builder(UiBuilder::new().max_rect(body).id_salt("points"), |ui| {
         ui.spacing_mut().item_spacing.y = 0.0;
-        ScrollArea::vertical().auto_shrink(false).show_rows(ui, ROW, trade.curve.len(), |ui, rows| {
-            for k in rows {
-                let point = &trade.curve[k];
-                let (row, response) = ui.allocate_exact_size(vec2(ui.available_width(), ROW), Sense::click());
-                let spoken = point_words(trade, point);
-                let current = chosen == Some(k);
-                response.widget_info(|| WidgetInfo::selected(Role::Row, true, current, &spoken));
-                let painter = ui.painter();
-                if current {
-                    painter.rect_filled(row, CornerRadius::same(3), palette.accent_wash);
-                    let mark = Rect::from_min_size(row.min, vec2(3.0, row.height()));
-                    painter.rect_filled(mark, CornerRadius::ZERO, palette.accent);
-                } else if response.hovered() {
-                    painter.rect_filled(row, CornerRadius::same(3), palette.well);
+        ScrollArea::vertical().id_salt("points").auto_shrink(false).show_rows(
+            ui,
+            ROW,
+            trade.curve.len(),
+            |ui, rows| {
+                for k in rows {
+                    let point = &trade.curve[k];
+                    let (row, response) =
+                        ui.allocate_exact_size(vec2(ui.available_width(), ROW), Sense::click());
+                    let spoken = point_words(trade, point);
+                    let current = chosen == Some(k);
+                    response.widget_info(|| WidgetInfo::selected(Role::Row, true, current, &spoken));
+                    let painter = ui.painter();
+                    if current {
+                        painter.rect_filled(row, CornerRadius::same(3), palette.accent_wash);
+                        let mark = Rect::from_min_size(row.min, vec2(3.0, row.height()));
+                        painter.rect_filled(mark, CornerRadius::ZERO, palette.accent);
+                    } else if response.hovered() {
+                        painter.rect_filled(row, CornerRadius::same(3), palette.well);
+                    }
+                    painter.hline(row.x_range(), row.bottom() - 0.5, Stroke::new(1.0, palette.grid));
+                    let v = &point.values;
+                    let gap = point.gap_percent().map_or_else(|| "\u{2013}".to_owned(), |gap| fixed(gap, 3));
+                    let bound = point.bound.map_or_else(|| "\u{2013}".to_owned(), |bound| fixed(bound, 1));
+                    let values = [
+                        fixed(point.level, 1),
+                        fixed(point.objective, 1),
+                        bound,
+                        gap,
+                        fixed(v.ra, 1),
+                        fixed(v.r9, 1),
+                        fixed(v.rf, 1),
+                        fixed(v.rg, 1),
+                        point.worth().to_owned(),
+                    ];
+                    cells(painter, row, &values, &text::small(), palette.ink);
+                    focus_ring(ui, &response, 3);
+                    if response.clicked() {
+                        asked = Some(k);
+                    }
                 }
-                painter.hline(row.x_range(), row.bottom() - 0.5, Stroke::new(1.0, palette.grid));
-                let v = &point.values;
-                let gap = point.gap_percent().map_or_else(|| "\u{2013}".to_owned(), |gap| fixed(gap, 3));
-                let bound = point.bound.map_or_else(|| "\u{2013}".to_owned(), |bound| fixed(bound, 1));
-                let values = [
-                    fixed(point.level, 1),
-                    fixed(point.objective, 1),
-                    bound,
-                    gap,
-                    fixed(v.ra, 1),
-                    fixed(v.r9, 1),
-                    fixed(v.rf, 1),
-                    fixed(v.rg, 1),
-                    point.worth().to_owned(),
-                ];
-                cells(painter, row, &values, &text::small(), palette.ink);
-                focus_ring(ui, &response, 3);
-                if response.clicked() {
-                    asked = Some(k);
-                }
-            }
-        });
+            },
+        );
     });
     asked
 }

@@ -79,6 +79,7 @@ fn controls(
     let (asked, shown) = segmented(ui, pos2(left.left(), y), "Against", &metrics, bench.metric);
     if let Some(metric) = asked {
         bench.metric = metric;
+        bench.metric_by_hand = true;
         bench.point = None;
         if bench.answer(aim) != Some(true) {
             wishes.push(Wish::Frontier(bench.ask(set.id, aim)));
