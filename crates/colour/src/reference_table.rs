@@ -10,7 +10,7 @@ use crate::illuminant::{DaylightBranch, daylight_grid_on, planckian_grid};
 use crate::kernel::{Arithmetic, Lanewise, fma};
 use crate::tensor::Tensor;
 use crate::tensor::column::{CES_LANES, TCS_LANES};
-use std::sync::LazyLock;
+use std::sync::OnceLock;
 
 const TCS: usize = 3 * TCS_LANES;
 const CES: usize = 3 * CES_LANES;
@@ -72,32 +72,33 @@ fn row(reference: &Reference) -> Row {
     row
 }
 
-/// Value and slope (per interval) at every node.
-static NODES: LazyLock<Vec<(Row, Row)>> = LazyLock::new(|| {
-    let mut nodes = Vec::new();
-    for (k, segment) in SEGMENTS.iter().enumerate() {
+/// Value and slope (per interval) of every node, each made when it is first asked for: a single white then costs two
+/// nodes, not the whole table.
+static NODES: [OnceLock<(Row, Row)>; 93] = [const { OnceLock::new() }; 93];
+
+fn node(k: usize, i: usize) -> &'static (Row, Row) {
+    let segment = &SEGMENTS[k];
+    NODES[segment.offset + i].get_or_init(|| {
         let width = (segment.last_mired - segment.first_mired) / segment.intervals as f64;
-        for i in 0..=segment.intervals {
-            let mired = segment.first_mired + width * i as f64;
-            let at = |offset: f64| row(&direct(k, mired + offset));
-            // Fourth-order central difference.
-            let e = 0.25;
-            let [less2, less, value, more, more2] = [at(-2.0 * e), at(-e), at(0.0), at(e), at(2.0 * e)];
-            let mut slope = Box::new([0.0; ROW]);
-            for lane in 0..ROW {
-                slope[lane] =
-                    width * (8.0 * (more[lane] - less[lane]) - (more2[lane] - less2[lane])) / (12.0 * e);
-            }
-            nodes.push((value, slope));
+        let mired = segment.first_mired + width * i as f64;
+        let at = |offset: f64| row(&direct(k, mired + offset));
+        // Fourth-order central difference.
+        let e = 0.25;
+        let [less2, less, value, more, more2] = [at(-2.0 * e), at(-e), at(0.0), at(e), at(2.0 * e)];
+        let mut slope = Box::new([0.0; ROW]);
+        for lane in 0..ROW {
+            slope[lane] =
+                width * (8.0 * (more[lane] - less[lane]) - (more2[lane] - less2[lane])) / (12.0 * e);
         }
-    }
-    nodes
-});
+        (value, slope)
+    })
+}
 
 /// The reference of a CCT from the table; None outside it.
 pub(super) fn interpolated(cct_k: f64, arithmetic: Arithmetic) -> Option<Reference> {
     let mired = 1e6 / cct_k;
-    let segment = &SEGMENTS[segment_of(cct_k)];
+    let k = segment_of(cct_k);
+    let segment = &SEGMENTS[k];
     // The slack lets exactly 1000 K pass in spite of rounding.
     if !(segment.first_mired - 1e-6..=segment.last_mired + 1e-3).contains(&mired) {
         return None;
@@ -106,7 +107,6 @@ pub(super) fn interpolated(cct_k: f64, arithmetic: Arithmetic) -> Option<Referen
         (mired - segment.first_mired) * segment.intervals as f64 / (segment.last_mired - segment.first_mired);
     let interval = (position.max(0.0) as usize).min(segment.intervals - 1);
     let t = position - interval as f64;
-    let nodes = &NODES[segment.offset + interval..segment.offset + interval + 2];
     let mut reference = Reference {
         cct_k,
         white: Uv { u: 0.0, v: 0.0 },
@@ -114,7 +114,12 @@ pub(super) fn interpolated(cct_k: f64, arithmetic: Arithmetic) -> Option<Referen
         ces_jab: Box::new([0.0; CES]),
         bins: [0; CES_LANES],
     };
-    arithmetic.run(Hermite { before: &nodes[0], after: &nodes[1], t, out: &mut reference });
+    arithmetic.run(Hermite {
+        before: node(k, interval),
+        after: node(k, interval + 1),
+        t,
+        out: &mut reference,
+    });
     Some(reference)
 }
 
