@@ -32,7 +32,7 @@ fn cabin_trade(metric: Metric) -> (Project, SetId, Trade) {
 
 #[test]
 fn more_rendering_never_gives_more_light_and_the_bound_lies_above() {
-    let (project, set, trade) = cabin_trade(Metric::Ra);
+    let (project, set, trade) = cabin_trade(Metric::R9);
     assert!(trade.curve.len() >= 10, "{}", trade.curve.len());
     for pair in trade.curve.windows(2) {
         assert!(pair[1].level > pair[0].level);
@@ -40,7 +40,7 @@ fn more_rendering_never_gives_more_light_and_the_bound_lies_above() {
         assert!(pair[1].objective <= pair[0].objective + slack, "{pair:?}");
     }
     for point in &trade.curve {
-        assert!(point.values.ra >= point.level - 1e-6);
+        assert!(point.values.r9 >= point.level - 1e-6);
         assert!(point.bound.is_none_or(|bound| bound >= point.objective - 1e-9));
         assert!((point.shares.iter().sum::<f64>() - 1.0).abs() < 1e-6);
         assert_eq!(point.shares.len(), project.set(set).unwrap().members.len());
@@ -87,7 +87,7 @@ fn a_spec_out_of_reach_is_refused_with_a_way_out_that_works() {
         *one.white.limits.of_mut(Metric::Ler) = Limit::at_least(390.0);
     }
     let copy = project.clone();
-    let refused = on_a_job(move |token| trade(&copy, set, Metric::Ra, Aim::Ler, token)).unwrap();
+    let refused = on_a_job(move |token| trade(&copy, set, Metric::R9, Aim::Ler, token)).unwrap();
     let Spec::Refused(refusal) = &refused.spec else { panic!("{:?}", refused.spec) };
     assert!(!refusal.words.is_empty() && !refusal.relaxations.is_empty(), "{refusal:?}");
     assert!(refused.prices.is_empty() && refused.dropped.is_empty());
@@ -97,7 +97,7 @@ fn a_spec_out_of_reach_is_refused_with_a_way_out_that_works() {
     for one in project.sets.iter_mut().filter(|one| one.id == set) {
         one.white = relaxed.white.clone();
     }
-    let opened = on_a_job(move |token| trade(&project, set, Metric::Ra, Aim::Ler, token)).unwrap();
+    let opened = on_a_job(move |token| trade(&project, set, Metric::R9, Aim::Ler, token)).unwrap();
     assert!(matches!(opened.spec, Spec::Met(_)), "{:?}", opened.spec);
 }
 

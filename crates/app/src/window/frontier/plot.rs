@@ -26,13 +26,13 @@ pub(super) struct Asked {
 pub(super) fn point_words(trade: &Trade, point: &Point) -> String {
     let bound = point.bound.map_or_else(
         || "no bound known".to_owned(),
-        |bound| format!("no blend gives more than {}", fixed(bound, 1)),
+        |bound| format!("no blend gives more than {}", fixed(bound, 2)),
     );
     format!(
         "{} at least {}: {} lm/W, {bound} ({})",
         title(trade.metric),
         fixed(point.level, 1),
-        fixed(point.objective, 1),
+        fixed(point.objective, 2),
         point.worth()
     )
 }

@@ -36,8 +36,8 @@ pub(super) fn show(
                             format!("No blend gives more than {}: proven.", fixed(bound, 1))
                         }
                         Some(bound) => format!(
-                            "No blend gives more than {} ({}, {} % higher).",
-                            fixed(bound, 1),
+                            "No blend gives more than {} ({}, {}\u{2009}% higher).",
+                            fixed(bound, 2),
                             best.worth(),
                             fixed(best.gap_percent().unwrap_or_default(), 2)
                         ),
@@ -45,7 +45,7 @@ pub(super) fn show(
                     };
                     ui.horizontal_wrapped(|ui| {
                         ui.spacing_mut().item_spacing.x = 5.0;
-                        let value = RichText::new(fixed(best.objective, 1)).font(text::value());
+                        let value = RichText::new(fixed(best.objective, 2)).font(text::value());
                         ui.label(value.color(palette.ink));
                         small(ui, trade.aim.words(), &palette);
                     });

@@ -20,7 +20,7 @@ pub(super) fn show(ui: &mut Ui, rect: Rect, trade: &Trade, chosen: Option<usize>
     let heads = [
         format!("{} \u{2265}", title(trade.metric)),
         "lm/W".to_owned(),
-        "none above".to_owned(),
+        "bound".to_owned(),
         "gap %".to_owned(),
         "Ra".to_owned(),
         "R9".to_owned(),
@@ -58,10 +58,10 @@ pub(super) fn show(ui: &mut Ui, rect: Rect, trade: &Trade, chosen: Option<usize>
                     painter.hline(row.x_range(), row.bottom() - 0.5, Stroke::new(1.0, palette.grid));
                     let v = &point.values;
                     let gap = point.gap_percent().map_or_else(|| "\u{2013}".to_owned(), |gap| fixed(gap, 3));
-                    let bound = point.bound.map_or_else(|| "\u{2013}".to_owned(), |bound| fixed(bound, 1));
+                    let bound = point.bound.map_or_else(|| "\u{2013}".to_owned(), |bound| fixed(bound, 2));
                     let values = [
                         fixed(point.level, 1),
-                        fixed(point.objective, 1),
+                        fixed(point.objective, 2),
                         bound,
                         gap,
                         fixed(v.ra, 1),
