@@ -67,39 +67,52 @@ pub struct Window {
 impl Window {
     /// The window on a project or on spectra files; on the demonstration when there are none. Changes are journalled.
     pub fn open(context: &Context, files: &[PathBuf]) -> Self {
-        let mut window = Self::on(context, session::demonstration(CABIN));
-        window.demonstration = true;
+        let is_project = |path: &&PathBuf| path.extension().is_some_and(|e| e.eq_ignore_ascii_case("ron"));
+        let spectra: Vec<PathBuf> = files.iter().filter(|path| !is_project(path)).cloned().collect();
+        let project = files.iter().rev().find(is_project);
         let mut problem = None;
-        let mut spectra = Vec::new();
-        for path in files {
-            if path.extension().is_some_and(|e| e.eq_ignore_ascii_case("ron")) {
-                match window.session.open(path) {
-                    Ok(state) => window.replace(state),
-                    Err(error) => problem = Some(error),
-                }
-            } else {
-                spectra.push(path.clone());
+        let opened =
+            project.and_then(|path| session::open(path).map_err(|sentence| problem = Some(sentence)).ok());
+        let mut window = match opened {
+            Some((state, sha256)) => Self::keeping(context, state, true, Some(sha256)),
+            None if !spectra.is_empty() => Self::keeping(context, empty_state(), true, None),
+            None => {
+                let mut window = Self::keeping(context, session::demonstration(CABIN), true, None);
+                window.demonstration = true;
+                window
             }
-        }
-        if !spectra.is_empty() && window.demonstration {
-            window.replace(empty_state());
-        }
-        let on_disk = std::mem::take(&mut window.session);
-        window.session = Session::journalled(&window.state).continuing(on_disk);
-        window.bring_in(context, &spectra);
+        };
         if let Some(problem) = problem {
             window.say(context, problem);
         }
+        window.bring_in(context, &spectra);
         window
     }
 
     /// The window on a state, with no journal and no system dialogs: for tests and pictures.
     pub fn on(context: &Context, state: State) -> Self {
+        let mut window = Self::keeping(context, state, false, None);
+        window.paths.without_dialogs = true;
+        window
+    }
+
+    /// The same on the demonstration.
+    pub fn on_demonstration(context: &Context) -> Self {
+        let mut window = Self::on(context, session::demonstration(CABIN));
+        window.demonstration = true;
+        window
+    }
+
+    fn keeping(context: &Context, mut state: State, journalled: bool, sha256: Option<String>) -> Self {
         theme::install(context);
         let repaint = {
             let context = context.clone();
             Arc::new(move || context.request_repaint())
         };
+        let mut session = Session::start(&mut state, journalled);
+        if sha256.is_some() {
+            session.change(&mut State::clone(&state), &mut state, sha256);
+        }
         Self {
             state,
             cache: Cache::new(),
@@ -109,19 +122,11 @@ impl Window {
             paths: Paths::default(),
             imports: Imports::default(),
             notice: Notice::default(),
-            session: Session::default(),
+            session,
             demonstration: false,
             title: String::new(),
             zoom: 0.0,
         }
-    }
-
-    /// The window on the demonstration, with no journal and no system dialogs: for tests and pictures.
-    pub fn on_demonstration(context: &Context) -> Self {
-        let mut window = Self::on(context, session::demonstration(CABIN));
-        window.demonstration = true;
-        window.paths.without_dialogs = true;
-        window
     }
 
     /// The project being edited.
@@ -305,7 +310,7 @@ impl Window {
     }
 
     fn journal(&mut self, context: &Context) {
-        if let Err(problem) = self.session.keep(&mut self.state) {
+        if let Some(problem) = self.session.note(&mut self.state) {
             self.say(context, problem);
         }
     }
@@ -324,16 +329,17 @@ impl Window {
         self.notice.say(words, context.time());
     }
 
-    fn replace(&mut self, state: State) {
+    /// Puts another state in place; `sha256` is the fingerprint of the file it was opened from.
+    fn replace(&mut self, state: State, sha256: Option<String>) {
         self.jobs.cancel_all();
-        self.state = state;
+        let mut before = std::mem::replace(&mut self.state, state);
+        self.session.change(&mut before, &mut self.state, sha256);
         self.cache.forget_revision();
         self.view.pull = None;
         self.view.details = None;
         self.view.frontier = frontier::Frontier::default();
         self.kept.clear();
         self.demonstration = false;
-        self.session.restart(&self.state);
     }
 
     fn run(&mut self, context: &Context, command: Command) {
@@ -418,7 +424,7 @@ impl Window {
     /// Puts another project in place as an edit, so that undo brings the one before back.
     fn replace_kept(&mut self, context: &Context, state: State) {
         if !self.state.unsaved() {
-            self.replace(state);
+            self.replace(state, None);
             return;
         }
         let project = state.project().clone();
@@ -483,33 +489,17 @@ impl Window {
     }
 
     fn open_file(&mut self, context: &Context, path: &Path) {
-        match self.session.open(path) {
-            Ok(state) => {
+        match session::open(path) {
+            Ok((state, sha256)) => {
                 let unsaved = self.state.unsaved();
-                let before = unsaved.then(|| self.state.project().clone());
-                self.replace(state);
-                if let Some(before) = before {
-                    // The project left unsaved stays one undo away.
-                    self.leave_before(context, before);
+                self.replace(state, Some(sha256));
+                if unsaved {
+                    let words =
+                        "The project before was not saved: the next start offers to bring its changes back.";
+                    self.say(context, words.to_owned());
                 }
             }
             Err(problem) => self.say(context, problem),
-        }
-    }
-
-    fn leave_before(&mut self, context: &Context, before: Project) {
-        let opened = self.state.project().clone();
-        let path = self.state.path().map(Path::to_path_buf);
-        if let Ok(mut state) = State::new(before, path.clone())
-            && state.apply(Edit::ReplaceProject(Box::new(opened))).is_ok()
-        {
-            let revision = state.revision();
-            if let Some(path) = path {
-                state.mark_saved(path, revision);
-            }
-            self.state = state;
-            self.cache.forget_revision();
-            self.say(context, "The project before was not saved: undo brings it back.".to_owned());
         }
     }
 
@@ -592,11 +582,11 @@ impl Window {
 
     /// Offers what an ended window left unsaved.
     fn recovery(&mut self, ui: &mut Ui) {
-        let Some(left) = self.session.left_behind.last() else { return };
-        let words = format!(
-            "\u{201c}{}\u{201d} had changes that were not saved when the program last ended.",
-            left.header.base.name
-        );
+        let Some(left) = self.session.left_behind.first() else { return };
+        let changes =
+            if left.changes == 1 { "1 change".to_owned() } else { format!("{} changes", left.changes) };
+        let words =
+            format!("\u{201c}{}\u{201d}: {changes} were not saved when the program last ended.", left.name);
         let palette = Palette::of(ui.ctx());
         let frame = Frame::new().fill(palette.accent_wash).inner_margin(Margin::symmetric(16, 6));
         let (mut back, mut discard) = (false, false);
@@ -607,17 +597,26 @@ impl Window {
                 discard = ui.button("Discard them").clicked();
             });
         });
-        if back && let Some(state) = self.session.bring_back() {
-            match state {
-                Ok(state) => self.replace(state),
+        if back {
+            let left = self.session.left_behind.remove(0);
+            let context = ui.ctx().clone();
+            match left.recover() {
+                Ok((state, made)) => {
+                    self.replace(state, None);
+                    // Its changes count as unsaved here; the old journal has done its work.
+                    let _ = left.discard();
+                    if made < left.changes {
+                        let words = format!("{made} of {} changes could be brought back.", left.changes);
+                        self.say(&context, words);
+                    }
+                }
                 Err(problem) => {
-                    let context = ui.ctx().clone();
-                    self.say(&context, format!("The changes could not be brought back: {problem}"));
+                    self.say(&context, format!("The changes could not be brought back: {problem}"))
                 }
             }
-        }
-        if discard {
-            self.session.discard();
+        } else if discard {
+            // A journal that cannot be removed is offered again at the next start.
+            let _ = self.session.left_behind.remove(0).discard();
         }
     }
 
@@ -707,11 +706,8 @@ impl Drop for Window {
     fn drop(&mut self) {
         self.jobs.cancel_all();
         self.state.end_gesture();
-        // A journal that is not empty stays: the next start offers it.
-        let kept = self.session.keep(&mut self.state).is_ok();
-        if kept && !self.state.unsaved() {
-            self.session.finish();
-        }
+        // With something unsaved the journal stays: the next start offers it.
+        self.session.close(&mut self.state);
     }
 }
 

@@ -259,6 +259,11 @@ pub(super) fn focus_ring(ui: &Ui, response: &Response, radius: u8) {
     }
 }
 
+/// The frame of sheets that open over the benches.
+pub(super) fn sheet_frame(ui: &Ui) -> egui::Frame {
+    egui::Frame::popup(ui.style()).inner_margin(Margin::same(16))
+}
+
 /// A sheet on the ground: returns the room inside its margin.
 pub(super) fn card(ui: &Ui, rect: Rect) -> Rect {
     let palette = Palette::of(ui.ctx());

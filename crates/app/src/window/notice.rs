@@ -4,7 +4,7 @@ use super::controls::sign_button;
 use super::paint::Icon;
 use super::theme::{Palette, text};
 use egui::accesskit::Role;
-use egui::{Align2, Area, CornerRadius, Order, Rect, Sense, Stroke, StrokeKind, Ui, WidgetInfo, pos2, vec2};
+use egui::{Area, CornerRadius, Order, Rect, Sense, Stroke, StrokeKind, Ui, WidgetInfo, pos2, vec2};
 
 /// Seconds a sentence stays.
 const STAYS: f64 = 12.0;
@@ -57,7 +57,6 @@ impl Notice {
                     sign_button(ui, cross, Icon::Cross, "Dismiss this message", palette.card, true).clicked();
             },
         );
-        let _ = Align2::CENTER_CENTER;
         if close {
             self.words = None;
         }

@@ -1,18 +1,15 @@
-//! Where the project is kept: opening, saving, exporting, and the journal of changes since.
+//! Where the project is kept: opening, exporting, and the keeper of its changes.
 
 use super::command::Command;
 use super::dialogs::paths::Purpose;
-use crate::state::{JournalEntry, State};
+use crate::state::State;
+use crate::state::keeping::{Keeper, Leftover, PROGRAM};
 use files::blend_sheet::{BlendSheet, blend_sheet_csv};
-use files::journal::{self, Header, Journal, LeftBehind};
-use files::project_file::{open_project, project_text, read_project};
+use files::project_file::{open_project, read_project};
 use files::save::save;
 use files::spectrum_csv::predicted_spectrum_csv;
 use project::SetId;
-use std::path::{Path, PathBuf};
-
-/// The program as it names itself in files.
-const PROGRAM: &str = concat!("whitesmith ", env!("CARGO_PKG_VERSION"));
+use std::path::Path;
 
 /// A demonstration carried in the program, as a state with nothing to undo.
 pub(super) fn demonstration(text: &str) -> State {
@@ -21,107 +18,63 @@ pub(super) fn demonstration(text: &str) -> State {
     State::new(opened.project, None).expect("the project carried in the program is valid; a test opens it")
 }
 
-/// The journal of one window.
-#[derive(Default)]
+/// Opens a project file; with the fingerprint of the file.
+pub(super) fn open(path: &Path) -> Result<(State, String), String> {
+    let opened = open_project(path).map_err(|e| e.to_string())?;
+    let state = State::new(opened.project, Some(path.to_path_buf())).map_err(|e| e.to_string())?;
+    Ok((state, opened.sha256))
+}
+
+/// Keeps one window's project.
 pub(super) struct Session {
-    journal: Option<Journal>,
-    folder: Option<PathBuf>,
-    /// SHA-256 of the project file as last read or written, to notice that another program changed it.
-    on_disk: Option<String>,
-    /// Changes of a window that ended without saving.
-    pub(super) left_behind: Vec<LeftBehind<JournalEntry>>,
+    keeper: Option<Keeper>,
+    journalled: bool,
+    /// What ended windows left unsaved.
+    pub(super) left_behind: Vec<Leftover>,
 }
 
 impl Session {
-    /// A session with a journal in the user's own folder, where there is one.
-    pub(super) fn journalled(state: &State) -> Self {
-        let Some(folder) = journal::default_folder() else { return Self::default() };
-        let mut left_behind = journal::left_behind::<JournalEntry>(&folder);
-        // A journal without a change holds nothing to bring back.
-        left_behind.retain(|left| {
-            if left.entries.is_empty() {
-                let _ = std::fs::remove_file(&left.path);
-            }
-            !left.entries.is_empty()
-        });
-        let mut session = Self { folder: Some(folder), left_behind, ..Self::default() };
-        session.restart(state);
+    /// Keeps a state: in the user's journal folder, or without a journal.
+    pub(super) fn start(state: &mut State, journalled: bool) -> Self {
+        let left_behind = if journalled { Keeper::left_behind() } else { Vec::new() };
+        let mut session = Self { keeper: None, journalled, left_behind };
+        session.begin(state, None);
         session
     }
 
-    fn header(state: &State) -> Header {
-        Header::new(PROGRAM, state.path().map(Path::to_path_buf), state.project().clone())
+    fn begin(&mut self, state: &mut State, sha256: Option<String>) {
+        self.keeper = Some(if self.journalled {
+            Keeper::start(state, sha256)
+        } else {
+            Keeper::start_in(None, state, sha256)
+        });
     }
 
-    /// Begins the journal anew: what has been is saved, or another project took its place.
-    pub(super) fn restart(&mut self, state: &State) {
-        let Some(folder) = &self.folder else { return };
-        let header = Self::header(state);
-        let kept = self.journal.as_mut().map(|journal| journal.restart(&header));
-        if !matches!(kept, Some(Ok(()))) {
-            // Without a journal the program works on; only recovery is lost.
-            self.journal = Journal::begin(folder, &header).ok();
-        }
+    /// Ends keeping `before` and begins keeping `after`.
+    pub(super) fn change(&mut self, before: &mut State, after: &mut State, sha256: Option<String>) {
+        self.close(before);
+        self.begin(after, sha256);
     }
 
-    /// Writes down the changes since the last call.
-    pub(super) fn keep(&mut self, state: &mut State) -> Result<(), String> {
-        let entries = state.take_journal();
-        match &mut self.journal {
-            Some(journal) if !entries.is_empty() => journal
-                .append(&entries)
-                .map_err(|e| format!("Changes are not being recorded: {e}. Save to keep them.")),
-            _ => Ok(()),
-        }
+    /// Writes down the changes since the last call; a sentence when that is not possible.
+    pub(super) fn note(&mut self, state: &mut State) -> Option<String> {
+        let keeper = self.keeper.as_mut()?;
+        keeper.note(state);
+        keeper.take_problem()
     }
 
-    /// Ends the journal: nothing is left to bring back.
-    pub(super) fn finish(&mut self) {
-        if let Some(journal) = self.journal.take() {
-            let _ = journal.finish();
-        }
-    }
-
-    /// Opens a project file.
-    pub(super) fn open(&mut self, path: &Path) -> Result<State, String> {
-        let opened = open_project(path).map_err(|e| e.to_string())?;
-        let state = State::new(opened.project, Some(path.to_path_buf())).map_err(|e| e.to_string())?;
-        self.on_disk = Some(opened.sha256);
-        Ok(state)
-    }
-
-    /// Saves the project; as a new file when `path` is not where it is kept.
+    /// Saves the project.
     pub(super) fn save(&mut self, state: &mut State, path: &Path) -> Result<(), String> {
-        let text = project_text(state.project()).map_err(|e| e.to_string())?;
-        let same = state.path() == Some(path);
-        let expected = if same { self.on_disk.as_deref() } else { None };
-        let saved = save(path, text.as_bytes(), expected).map_err(|e| e.to_string())?;
-        self.on_disk = Some(saved.sha256);
-        let revision = state.revision();
-        state.mark_saved(path.to_path_buf(), revision);
-        state.take_journal();
-        self.restart(state);
-        Ok(())
+        match &mut self.keeper {
+            Some(keeper) => keeper.save(state, path, false).map_err(|e| e.to_string()),
+            None => Ok(()),
+        }
     }
 
-    /// The state a window left behind, its changes made again, and whether all of them could be.
-    pub(super) fn bring_back(&mut self) -> Option<Result<State, String>> {
-        let left = self.left_behind.pop()?;
-        let back = (|| {
-            let mut state = State::new(left.header.base, left.header.path).map_err(|e| e.to_string())?;
-            for entry in left.entries {
-                state.replay(entry).map_err(|e| e.to_string())?;
-            }
-            Ok(state)
-        })();
-        let _ = std::fs::remove_file(&left.path);
-        Some(back)
-    }
-
-    /// Leaves the changes of an ended window aside for good.
-    pub(super) fn discard(&mut self) {
-        for left in self.left_behind.drain(..) {
-            let _ = std::fs::remove_file(&left.path);
+    /// Ends keeping: with nothing unsaved no journal stays.
+    pub(super) fn close(&mut self, state: &mut State) {
+        if let Some(keeper) = self.keeper.take() {
+            keeper.close(state);
         }
     }
 }
@@ -192,12 +145,4 @@ pub(super) fn export(
         _ => predicted_spectrum_csv(project, set).map_err(|e| e.to_string())?,
     };
     save(path, text.as_bytes(), None).map(|_| ()).map_err(|e| e.to_string())
-}
-
-impl Session {
-    /// Takes over what another session knew of the file on disk.
-    pub(super) fn continuing(mut self, before: Self) -> Self {
-        self.on_disk = before.on_disk;
-        self
-    }
 }

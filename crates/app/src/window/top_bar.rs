@@ -191,7 +191,10 @@ fn main_menu(ui: &mut Ui, scene: &Scene<'_>, wishes: &mut Vec<Wish>) {
     ui.set_min_width(250.0);
     let label = ui.label("Name of this project");
     let mut name = scene.state.project().name.clone();
-    let typed = ui.text_edit_singleline(&mut name).labelled_by(label.id);
+    let field = egui::TextEdit::singleline(&mut name)
+        .desired_width(f32::INFINITY)
+        .background_color(scene.palette.well);
+    let typed = ui.add(field).labelled_by(label.id);
     if typed.changed() && !name.trim().is_empty() {
         wishes.push(Wish::Edit(Edit::ProjectName(name)));
     }

@@ -21,7 +21,6 @@ pub(in crate::window) fn menu(
     emitter: &Emitter,
     row: usize,
     set: &EmitterSet,
-    scene: &Scene<'_>,
     view: &mut View,
     wishes: &mut Vec<Wish>,
 ) {
@@ -47,7 +46,6 @@ pub(in crate::window) fn menu(
         if ui.button("Delete from the project").clicked() {
             wishes.push(Wish::Edit(Edit::RemoveEmitter(id)));
         }
-        let _ = scene;
     });
 }
 
@@ -55,12 +53,14 @@ pub(in crate::window) fn menu(
 pub(in crate::window) fn show(ui: &mut Ui, scene: &Scene<'_>, view: &mut View, wishes: &mut Vec<Wish>) {
     let Some(mut details) = view.details.take() else { return };
     let Some(emitter) = scene.state.project().emitter(details.emitter) else { return };
-    let modal = Modal::new(egui::Id::unique("emitter details")).show(ui.ctx(), |ui| {
-        ui.set_width(460.0);
-        body(ui, emitter, &mut details, scene, wishes);
-        ui.add_space(8.0);
-        ui.button("Done").clicked()
-    });
+    let modal = Modal::new(egui::Id::unique("emitter details"))
+        .frame(super::super::controls::sheet_frame(ui))
+        .show(ui.ctx(), |ui| {
+            ui.set_width(460.0);
+            body(ui, emitter, &mut details, scene, wishes);
+            ui.add_space(8.0);
+            ui.button("Done").clicked()
+        });
     let typed = |wishes: &mut Vec<Wish>| {
         if details.name != emitter.name && !details.name.trim().is_empty() {
             wishes.push(Wish::Edit(Edit::EmitterName { emitter: emitter.id, name: details.name.clone() }));

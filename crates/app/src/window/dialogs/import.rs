@@ -94,11 +94,13 @@ impl Imports {
         let left = self.waiting.len();
         let room = ui.ctx().content_rect().size();
         let mut end = None;
-        let modal = Modal::new(egui::Id::unique("import")).show(ui.ctx(), |ui| {
-            ui.set_width((room.x - 120.0).min(960.0));
-            ui.set_max_height(room.y - 90.0);
-            end = preview.body(ui, (room.y - 250.0).min(520.0), left, has_set, &mut asked);
-        });
+        let modal = Modal::new(egui::Id::unique("import"))
+            .frame(super::super::controls::sheet_frame(ui))
+            .show(ui.ctx(), |ui| {
+                ui.set_width((room.x - 120.0).min(960.0));
+                ui.set_max_height(room.y - 90.0);
+                end = preview.body(ui, (room.y - 250.0).min(520.0), left, has_set, &mut asked);
+            });
         if modal.should_close() && end.is_none() {
             end = Some(End::Leave);
         }

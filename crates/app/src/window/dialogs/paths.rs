@@ -175,36 +175,39 @@ impl Paths {
     pub(in crate::window) fn show(&mut self, ui: &Ui) -> Option<(Purpose, Vec<PathBuf>)> {
         let typing = self.typing.as_mut()?;
         let mut done = None;
-        let modal = Modal::new(egui::Id::unique("path box")).show(ui.ctx(), |ui| {
-            ui.set_width(560.0);
-            ui.heading(typing.purpose.title());
-            ui.add_space(6.0);
-            let label = ui.weak("Type the path, or choose below.");
-            let field = ui
-                .add(TextEdit::singleline(&mut typing.path).desired_width(f32::INFINITY))
-                .labelled_by(label.id);
-            if typing.fresh {
-                typing.fresh = false;
-                field.request_focus();
-            }
-            let entered = field.lost_focus() && ui.input(|i| i.key_pressed(Key::Enter));
-            listing(ui, typing);
-            ui.add_space(8.0);
-            let path = PathBuf::from(typing.path.trim());
-            let problem = problem(typing.purpose, &path);
-            if let Some(problem) = &problem {
-                ui.label(RichText::new(problem).color(Palette::of(ui.ctx()).caution));
-            }
-            ui.horizontal(|ui| {
-                let accept =
-                    ui.add_enabled(problem.is_none(), egui::Button::new(typing.purpose.button())).clicked();
-                if (accept || entered) && problem.is_none() {
-                    done = Some((typing.purpose, vec![path]));
+        let modal = Modal::new(egui::Id::unique("path box"))
+            .frame(super::super::controls::sheet_frame(ui))
+            .show(ui.ctx(), |ui| {
+                ui.set_width(560.0);
+                ui.heading(typing.purpose.title());
+                ui.add_space(6.0);
+                let label = ui.weak("Type the path, or choose below.");
+                let field = ui
+                    .add(TextEdit::singleline(&mut typing.path).desired_width(f32::INFINITY))
+                    .labelled_by(label.id);
+                if typing.fresh {
+                    typing.fresh = false;
+                    field.request_focus();
                 }
-                ui.button("Cancel").clicked()
-            })
-            .inner
-        });
+                let entered = field.lost_focus() && ui.input(|i| i.key_pressed(Key::Enter));
+                listing(ui, typing);
+                ui.add_space(8.0);
+                let path = PathBuf::from(typing.path.trim());
+                let problem = problem(typing.purpose, &path);
+                if let Some(problem) = &problem {
+                    ui.label(RichText::new(problem).color(Palette::of(ui.ctx()).caution));
+                }
+                ui.horizontal(|ui| {
+                    let accept = ui
+                        .add_enabled(problem.is_none(), egui::Button::new(typing.purpose.button()))
+                        .clicked();
+                    if (accept || entered) && problem.is_none() {
+                        done = Some((typing.purpose, vec![path]));
+                    }
+                    ui.button("Cancel").clicked()
+                })
+                .inner
+            });
         let cancelled = modal.inner || modal.should_close();
         if let Some((purpose, paths)) = done {
             self.typing = None;

@@ -87,9 +87,6 @@ pub(super) fn show(
             ui.interact(shown, ui.scope_id().with(("remark", line.key)), Sense::hover())
                 .on_hover_text(&line.remark);
         }
-    } else if !line.remark.is_empty() && line.key == "light" {
-        let at = pos2(rect.left() + LIMIT_X + 4.0, top);
-        let _ = at;
     }
 }
 

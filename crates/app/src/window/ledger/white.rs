@@ -7,7 +7,9 @@ use super::super::wish::Wish;
 use super::limits::white;
 use colour::tolerance::{Ellipse, IEC_60081, NOMINAL_CCTS_K};
 use egui::accesskit::Role;
-use egui::{CornerRadius, DragValue, Popup, PopupCloseBehavior, Rect, Sense, Ui, WidgetInfo, pos2, vec2};
+use egui::{
+    CornerRadius, DragValue, Popup, PopupCloseBehavior, Rect, RichText, Sense, Ui, WidgetInfo, pos2, vec2,
+};
 use project::{EmitterSet, Region};
 
 /// The line that names the region and opens the choice of it.
@@ -38,13 +40,14 @@ pub(super) fn region(ui: &mut Ui, width: f32, scene: &Scene<'_>, set: &EmitterSe
     );
     icon(&painter, Icon::Open, pos2(area.right() - 9.0, y), 8.0, palette.accent);
     super::super::controls::focus_ring(ui, &response, 4);
-    Popup::menu(&response)
+    Popup::from_toggle_button_response(&response)
         .close_behavior(PopupCloseBehavior::CloseOnClickOutside)
+        .frame(super::super::controls::sheet_frame(ui))
         .show(|ui| choices(ui, set, wishes));
 }
 
 fn choices(ui: &mut Ui, set: &EmitterSet, wishes: &mut Vec<Wish>) {
-    ui.set_min_width(290.0);
+    ui.set_width(330.0);
     let now = &set.white.region;
     let target_k = set.white.cct_k;
     let mut choose = |region: Region| {
@@ -151,7 +154,8 @@ fn choices(ui: &mut Ui, set: &EmitterSet, wishes: &mut Vec<Wish>) {
             }
         });
     });
-    ui.weak("Quadrangles and ellipses lie round the centres of their standards, not round the target.");
+    let note = "Quadrangles and ellipses lie round the centres of their standards, not round the target.";
+    ui.add(egui::Label::new(RichText::new(note).font(text::small()).weak()).wrap());
 }
 
 fn combo(ui: &mut Ui, name: &str, shown: &str, choices: impl FnOnce(&mut Ui)) {

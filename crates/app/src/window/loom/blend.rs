@@ -4,7 +4,7 @@ use super::super::controls::{Number, value_style};
 use super::super::paint::Pattern;
 use super::super::paint::{Words, band, fixed, measure, patterned, write};
 use super::super::theme::{screen, text};
-use super::super::view::{Scene, View};
+use super::super::view::Scene;
 use super::super::wish::Wish;
 use super::{Axis, EDGE_GAP};
 use crate::state::Edit;
@@ -19,7 +19,6 @@ pub(super) fn show(
     axis: &Axis,
     scene: &Scene<'_>,
     set: &EmitterSet,
-    view: &View,
     wishes: &mut Vec<Wish>,
 ) {
     let palette = scene.palette;
@@ -34,7 +33,6 @@ pub(super) fn show(
     picture(ui, plot, axis, scene, set, blend);
     let edge = Rect::from_min_max(pos2(axis.right + EDGE_GAP, rect.top()), rect.max);
     figures(ui, edge, scene, set, blend, wishes);
-    let _ = view;
 }
 
 /// The plot's key figures, for those who cannot see it.

@@ -83,7 +83,7 @@ pub(super) fn show(
         }
         if let Some(value) = typed.value {
             match view.pull.as_mut().filter(|pull| pull.emitter == id && typed.response.dragged()) {
-                Some(pull) => pull.to(value / 100.0, rows.scene, rows.set, wishes),
+                Some(pull) => pull.to(value / 100.0, rows.set, wishes),
                 None => row::set_share(k, value / 100.0, rows, view, wishes),
             }
         }
@@ -190,7 +190,7 @@ pub(super) fn show(
             palette.muted,
             true,
         );
-        super::super::dialogs::emitter::menu(&more, emitter, k, rows.set, rows.scene, view, wishes);
+        super::super::dialogs::emitter::menu(&more, emitter, k, rows.set, view, wishes);
     }
 }
 

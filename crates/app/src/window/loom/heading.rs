@@ -154,7 +154,10 @@ fn sets(ui: &mut Ui, scene: &Scene<'_>, current: &EmitterSet, wishes: &mut Vec<W
     ui.separator();
     let mut name = current.name.clone();
     let label = ui.label("Name of this set");
-    let typed = ui.text_edit_singleline(&mut name).labelled_by(label.id);
+    let field = egui::TextEdit::singleline(&mut name)
+        .desired_width(f32::INFINITY)
+        .background_color(scene.palette.well);
+    let typed = ui.add(field).labelled_by(label.id);
     if typed.changed() && !name.trim().is_empty() {
         wishes.push(Wish::Edit(Edit::SetName { set: current.id, name }));
     }

@@ -81,7 +81,7 @@ pub(super) fn show(ui: &mut Ui, rect: Rect, scene: &Scene<'_>, view: &mut View, 
 
     let used = (rows * row_height).min(rows_room.height());
     axis.grid(ui.painter(), body.top(), rows_room.top() + used, &scene.palette);
-    blend::show(ui, top, &axis, scene, set, view, wishes);
+    blend::show(ui, top, &axis, scene, set, wishes);
 
     let kind = scene.state.project().share_kind;
     let scale = shared_scale(blend, kind, view);

@@ -1,6 +1,5 @@
 //! Pulling a row: from where the hand is to the shares of all rows.
 
-use super::super::view::Scene;
 use super::super::wish::Wish;
 use crate::state::Edit;
 use crate::state::derived::BlendView;
@@ -60,8 +59,7 @@ impl Pull {
     }
 
     /// Moves the row to a share; the edit is asked for when it changes anything.
-    pub(super) fn to(&mut self, wanted: f64, scene: &Scene<'_>, set: &EmitterSet, wishes: &mut Vec<Wish>) {
-        let _ = scene;
+    pub(super) fn to(&mut self, wanted: f64, set: &EmitterSet, wishes: &mut Vec<Wish>) {
         match self.shares(wanted.clamp(0.0, 1.0)) {
             Ok(pulled) => {
                 self.at_end = pulled.at_end;

@@ -119,22 +119,18 @@ fn hand(
     }
     let Some(pull) = view.pull.as_mut().filter(|pull| pull.emitter == emitter) else { return };
     if response.dragged() {
-        if ui.input(|i| i.key_pressed(Key::Escape)) {
-            view.pull = None;
-            wishes.push(Wish::Cancel);
-            ui.ctx().stop_dragging();
-            return;
-        }
         let (from, to, fine) =
             ui.input(|i| (i.pointer.press_origin(), i.pointer.latest_pos(), i.modifiers.shift));
         if let (Some(from), Some(to)) = (from, to) {
             let per_point = view.pull_scale / f64::from(plot.full) * if fine { 0.1 } else { 1.0 };
-            pull.to(pull.start + f64::from(from.y - to.y) * per_point, rows.scene, rows.set, wishes);
+            pull.to(pull.start + f64::from(from.y - to.y) * per_point, rows.set, wishes);
         }
     }
     if response.drag_stopped() {
         view.pull = None;
-        wishes.push(Wish::End);
+        // The toolkit ends a drag when Escape is pressed; for us that takes the pull back.
+        let taken_back = ui.input(|i| i.key_pressed(Key::Escape));
+        wishes.push(if taken_back { Wish::Cancel } else { Wish::End });
     }
 }
 
@@ -204,7 +200,7 @@ fn keys(
 pub(super) fn set_share(k: usize, wanted: f64, rows: &RowScene<'_>, view: &mut View, wishes: &mut Vec<Wish>) {
     let Some(blend) = rows.blend else { return };
     let Some(mut pull) = Pull::begin(rows.set, blend, k, rows.kind, view.hold_white) else { return };
-    pull.to(wanted, rows.scene, rows.set, wishes);
+    pull.to(wanted, rows.set, wishes);
     if let Some(stuck) = pull.stuck {
         wishes.push(Wish::Say(sentence(&stuck.to_string())));
     }

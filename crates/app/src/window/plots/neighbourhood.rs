@@ -222,11 +222,9 @@ fn planckian(painter: &Painter, map: &Map, half: f64, aspect: f64, palette: &Pal
     painter.add(Shape::line(points, Stroke::new(1.5, palette.ink)));
 
     let step = [25.0, 50.0, 100.0, 200.0, 250.0, 500.0, 1000.0, 2000.0].into_iter().find(|step| {
-        let here = map.at(map.centre);
         let Some(white) = locus::cct_duv(map.centre.uv()) else { return true };
         let there = map.at(locus_at(white.cct_k + step));
         let on_locus = map.at(locus_at(white.cct_k));
-        let _ = here;
         there.distance(on_locus) >= 46.0
     });
     let Some(step) = step else { return };

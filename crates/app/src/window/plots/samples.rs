@@ -4,7 +4,7 @@ use super::super::paint::{fixed, write};
 use super::super::theme::text;
 use super::super::view::Scene;
 use egui::accesskit::Role;
-use egui::{Align2, CornerRadius, Rect, Sense, Stroke, Ui, WidgetInfo, pos2, vec2};
+use egui::{Align2, CornerRadius, Rect, Sense, Stroke, Ui, WidgetInfo, pos2};
 
 pub(in crate::window) fn show(ui: &mut Ui, rect: Rect, scene: &Scene<'_>) {
     let palette = scene.palette;
@@ -50,6 +50,5 @@ pub(in crate::window) fn show(ui: &mut Ui, rect: Rect, scene: &Scene<'_>) {
         );
     }
     painter.hline(rect.x_range(), y(0.0), Stroke::new(1.0, palette.rule));
-    let _ = vec2(0.0, 0.0);
     response.on_hover_text("Special indices of the fifteen test colours (CIE 13.3-1995; R15 after JIS Z 8726). R9, in the accent, is the saturated red.");
 }
