@@ -34,6 +34,7 @@ mod space;
 mod table;
 mod tcs;
 pub mod unmix;
+mod viewing;
 
 pub use answer::{
     Binding, Grade, Infeasible, Nearest, Outcome, PROVEN_GAP, Reachable, Relaxation, Shortfall, Solution,
