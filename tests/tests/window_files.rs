@@ -1,5 +1,7 @@
 //! Files in the window: pasting, importing, saving, opening, exporting, all without a system dialog.
 
+#![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
+
 mod window_support;
 
 use egui::{Event, Key, Modifiers};

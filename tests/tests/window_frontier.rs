@@ -3,6 +3,8 @@
 //!
 //! `UPDATE_SNAPSHOTS=1 cargo test -p checks --test window_frontier` also writes the pictures of the documentation.
 
+#![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
+
 mod window_support;
 
 use egui::accesskit::Role;

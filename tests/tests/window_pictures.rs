@@ -2,6 +2,8 @@
 //!
 //! `UPDATE_SNAPSHOTS=1 cargo test -p checks --test window_pictures` writes them anew: look at them before keeping them.
 
+#![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
+
 mod window_support;
 
 use egui::Theme;

@@ -51,7 +51,7 @@ impl Driven {
     pub(crate) fn picture(&mut self) -> (usize, usize, Vec<u8>) {
         let (width, height, pixels) =
             self.rasteriser.borrow().picture(&self.harness.ctx, self.harness.output(), egui::Color32::BLACK);
-        (width, height, pixels.iter().flat_map(|pixel| pixel.to_array()).collect())
+        (width, height, pixels.iter().flat_map(egui::Color32::to_array).collect())
     }
 
     /// Presses the first button at a place and steps.

@@ -611,7 +611,7 @@ impl Window {
                     }
                 }
                 Err(problem) => {
-                    self.say(&context, format!("The changes could not be brought back: {problem}"))
+                    self.say(&context, format!("The changes could not be brought back: {problem}"));
                 }
             }
         } else if discard {
