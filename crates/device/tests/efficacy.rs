@@ -1,5 +1,5 @@
 //! Best lm/W over blends and currents together, against brute force over both.
-#![allow(clippy::unwrap_used, reason = "a test helper fails its test")]
+#![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
 mod support;
 

@@ -1,6 +1,6 @@
 //! Device power as an objective: against brute force over currents, and its bounds against its own optimum.
 
-#![allow(clippy::unwrap_used, reason = "a test helper fails its test")]
+#![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
 mod support;
 

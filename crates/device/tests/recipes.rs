@@ -1,5 +1,5 @@
 //! What recipes say: holds, masks, stacks, strings, partial sheets, bands.
-#![allow(clippy::unwrap_used, reason = "a test helper fails its test")]
+#![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
 mod support;
 

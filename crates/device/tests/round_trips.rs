@@ -1,5 +1,5 @@
 //! Shares to recipe and back, for every form, with random sheets and 3 to 8 emitters.
-#![allow(clippy::unwrap_used, reason = "a test helper fails its test")]
+#![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
 mod support;
 

@@ -3,7 +3,7 @@
 //! Tags [Cn] are those of the worked examples this project carries: values computed from the stated formulas
 //! with CIE 1931 tables and the 2019 SI constants. Tolerances are half of the last digit given.
 
-#![allow(clippy::unwrap_used, reason = "a test helper fails its test")]
+#![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
 mod support;
 

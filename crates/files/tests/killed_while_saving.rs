@@ -3,7 +3,7 @@
 //! Twenty rounds by default; `KILL_ROUNDS=1000 cargo test -p files --test killed_while_saving` for the long run. The
 //! instants come from a fixed sequence, though the machine's own timing adds to them.
 
-#![allow(clippy::unwrap_used, reason = "helpers of a test")]
+#![allow(clippy::unwrap_used, reason = "a test fails by panicking")]
 
 use files::journal::{Header, Journal, read_journal};
 use files::project_file::{open_project, project_text};

@@ -4,9 +4,9 @@ use super::command::Command;
 use super::dialogs;
 use super::dialogs::import::{Asked, Imports, Source};
 use super::dialogs::paths::{Paths, Purpose};
+use super::documents::{self, Documents};
 use super::notice::Notice;
 use super::proof::{self, Question, Solved};
-use super::session::{self, Session};
 use super::theme::{self, Palette};
 use super::view::{Bench, Proof, Scene, View};
 use super::wish::Wish;
@@ -58,7 +58,7 @@ pub struct Window {
     paths: Paths,
     imports: Imports,
     notice: Notice,
-    session: Session,
+    documents: Documents,
     demonstration: bool,
     title: String,
     zoom: f32,
@@ -72,12 +72,12 @@ impl Window {
         let project = files.iter().rev().find(is_project);
         let mut problem = None;
         let opened =
-            project.and_then(|path| session::open(path).map_err(|sentence| problem = Some(sentence)).ok());
+            project.and_then(|path| documents::open(path).map_err(|sentence| problem = Some(sentence)).ok());
         let mut window = match opened {
             Some((state, sha256)) => Self::keeping(context, state, true, Some(sha256)),
             None if !spectra.is_empty() => Self::keeping(context, empty_state(), true, None),
             None => {
-                let mut window = Self::keeping(context, session::demonstration(CABIN), true, None);
+                let mut window = Self::keeping(context, documents::demonstration(CABIN), true, None);
                 window.demonstration = true;
                 window
             }
@@ -98,7 +98,7 @@ impl Window {
 
     /// The same on the demonstration.
     pub fn on_demonstration(context: &Context) -> Self {
-        let mut window = Self::on(context, session::demonstration(CABIN));
+        let mut window = Self::on(context, documents::demonstration(CABIN));
         window.demonstration = true;
         window
     }
@@ -109,9 +109,9 @@ impl Window {
             let context = context.clone();
             Arc::new(move || context.request_repaint())
         };
-        let mut session = Session::start(&mut state, journalled);
+        let mut documents = Documents::start(&mut state, journalled);
         if sha256.is_some() {
-            session.change(&mut State::clone(&state), &mut state, sha256);
+            documents.change(&mut State::clone(&state), &mut state, sha256);
         }
         Self {
             state,
@@ -122,7 +122,7 @@ impl Window {
             paths: Paths::default(),
             imports: Imports::default(),
             notice: Notice::default(),
-            session,
+            documents,
             demonstration: false,
             title: String::new(),
             zoom: 0.0,
@@ -310,7 +310,7 @@ impl Window {
     }
 
     fn journal(&mut self, context: &Context) {
-        if let Some(problem) = self.session.note(&mut self.state) {
+        if let Some(problem) = self.documents.note(&mut self.state) {
             self.say(context, problem);
         }
     }
@@ -333,7 +333,7 @@ impl Window {
     fn replace(&mut self, state: State, sha256: Option<String>) {
         self.jobs.cancel_all();
         let mut before = std::mem::replace(&mut self.state, state);
-        self.session.change(&mut before, &mut self.state, sha256);
+        self.documents.change(&mut before, &mut self.state, sha256);
         self.cache.forget_revision();
         self.view.pull = None;
         self.view.details = None;
@@ -346,11 +346,11 @@ impl Window {
         match command {
             Command::New => self.replace_kept(context, empty_state()),
             Command::OpenDemo => {
-                self.replace_kept(context, session::demonstration(CABIN));
+                self.replace_kept(context, documents::demonstration(CABIN));
                 self.demonstration = true;
             }
             Command::OpenLibrary => {
-                self.replace_kept(context, session::demonstration(LIBRARY));
+                self.replace_kept(context, documents::demonstration(LIBRARY));
                 self.demonstration = true;
             }
             Command::Open => self.paths.ask(context, Purpose::OpenProject, ""),
@@ -368,7 +368,7 @@ impl Window {
             | Command::ExportRecipeCsv
             | Command::ExportRecipeSpectrum
             | Command::ExportRecipeTm27 => {
-                if let Some(purpose) = session::export_purpose(command) {
+                if let Some(purpose) = documents::export_purpose(command) {
                     let name = self.state.current_set().map_or("recipe", |set| set.name.as_str());
                     let what = match purpose {
                         Purpose::ReportPdf | Purpose::ReportHtml => "report",
@@ -380,7 +380,7 @@ impl Window {
                 }
             }
             Command::ExportSheetRon | Command::ExportSheetCsv | Command::ExportSpectrum => {
-                if let Some(purpose) = session::export_purpose(command) {
+                if let Some(purpose) = documents::export_purpose(command) {
                     let name = self.state.current_set().map_or("blend", |set| set.name.as_str());
                     let what = if purpose == Purpose::SpectrumCsv { "spectrum" } else { "blend sheet" };
                     let name = format!("{}.{}", file_name(&format!("{name} {what}")), purpose.ending());
@@ -440,7 +440,7 @@ impl Window {
 
     fn save(&mut self, context: &Context, path: &Path) {
         self.state.end_gesture();
-        match self.session.save(&mut self.state, path) {
+        match self.documents.save(&mut self.state, path) {
             Ok(()) => {
                 self.demonstration = false;
                 self.say(context, format!("Saved as {}.", path.display()));
@@ -462,7 +462,7 @@ impl Window {
             Purpose::SheetRon | Purpose::SheetCsv | Purpose::SpectrumCsv => {
                 let Some(set) = self.state.current_set().map(|set| set.id) else { return };
                 let proof = self.proof().map(|proof| proof.words.clone());
-                let words = match session::export(&self.state, set, proof, purpose, first) {
+                let words = match documents::export(&self.state, set, proof, purpose, first) {
                     Ok(()) => format!("Written to {}.", first.display()),
                     Err(problem) => problem,
                 };
@@ -477,11 +477,17 @@ impl Window {
                 let Some(set) = self.state.current_set().map(|set| set.id) else { return };
                 let proof = self.proof().map(|proof| proof.words.clone());
                 let plan = self.view.recipe.chosen;
-                let words =
-                    match session::export_recipe(&self.state, set, plan, proof.as_deref(), purpose, first) {
-                        Ok(()) => format!("Written to {}.", first.display()),
-                        Err(problem) => problem,
-                    };
+                let words = match documents::export_recipe(
+                    &self.state,
+                    set,
+                    plan,
+                    proof.as_deref(),
+                    purpose,
+                    first,
+                ) {
+                    Ok(()) => format!("Written to {}.", first.display()),
+                    Err(problem) => problem,
+                };
                 self.say(context, words);
             }
         }
@@ -489,7 +495,7 @@ impl Window {
     }
 
     fn open_file(&mut self, context: &Context, path: &Path) {
-        match session::open(path) {
+        match documents::open(path) {
             Ok((state, sha256)) => {
                 let unsaved = self.state.unsaved();
                 self.replace(state, Some(sha256));
@@ -582,7 +588,7 @@ impl Window {
 
     /// Offers what an ended window left unsaved.
     fn recovery(&mut self, ui: &mut Ui) {
-        let Some(left) = self.session.left_behind.first() else { return };
+        let Some(left) = self.documents.left_behind.first() else { return };
         let changes =
             if left.changes == 1 { "1 change".to_owned() } else { format!("{} changes", left.changes) };
         let words =
@@ -598,7 +604,7 @@ impl Window {
             });
         });
         if back {
-            let left = self.session.left_behind.remove(0);
+            let left = self.documents.left_behind.remove(0);
             let context = ui.ctx().clone();
             match left.recover() {
                 Ok((state, made)) => {
@@ -616,7 +622,7 @@ impl Window {
             }
         } else if discard {
             // A journal that cannot be removed is offered again at the next start.
-            let _ = self.session.left_behind.remove(0).discard();
+            let _ = self.documents.left_behind.remove(0).discard();
         }
     }
 
@@ -707,7 +713,7 @@ impl Drop for Window {
         self.jobs.cancel_all();
         self.state.end_gesture();
         // With something unsaved the journal stays: the next start offers it.
-        self.session.close(&mut self.state);
+        self.documents.close(&mut self.state);
     }
 }
 

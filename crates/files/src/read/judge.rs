@@ -54,6 +54,8 @@ pub(super) fn judge(nm: &[f64], values: &[f64], factors: &dyn Fn(f64) -> f64) ->
     let flat = is_flat(values);
     if flat {
         found.warnings.push("all values are nearly the same: no emission is seen".into());
+    } else if is_noise(values) {
+        found.warnings.push("the values scatter like noise: no emission stands out".into());
     } else {
         found.hole = hole(nm, &above, peak);
         if let Some(sentence) = spike(nm, &above) {
@@ -217,6 +219,26 @@ fn is_flat(values: &[f64]) -> bool {
     sorted.sort_by(f64::total_cmp);
     let (low, high) = (sorted[sorted.len() / 20], sorted[sorted.len() - 1]);
     high > 0.0 && high - low < 0.05 * high && high - sorted[0] < 0.1 * high
+}
+
+/// Neighbours that know nothing of each other (their mean squared difference is near twice the variance: von Neumann's ratio,
+/// Annals of Mathematical Statistics 12:367, 1941), and no sample beyond the scatter of the others.
+fn is_noise(values: &[f64]) -> bool {
+    const FEWEST: usize = 40;
+    const RATIO: f64 = 1.4;
+    const SCATTER: f64 = 6.0;
+    if values.len() < FEWEST {
+        return false;
+    }
+    let count = values.len() as f64;
+    let mean = values.iter().sum::<f64>() / count;
+    let variance = values.iter().map(|value| (value - mean).powi(2)).sum::<f64>() / count;
+    let steps = values.windows(2).map(|pair| (pair[1] - pair[0]).powi(2)).sum::<f64>() / (count - 1.0);
+    let middle = median(&mut values.to_vec());
+    let mut away: Vec<f64> = values.iter().map(|value| (value - middle).abs()).collect();
+    let most = away.iter().copied().fold(0.0, f64::max);
+    // 1.4826 turns the median deviation of normal scatter into its standard deviation.
+    variance > 0.0 && steps > RATIO * variance && most < SCATTER * 1.4826 * median(&mut away)
 }
 
 /// One sample far from the line between its neighbours while the rest is smooth.
@@ -442,6 +464,10 @@ mod tests {
         says(&clean.iter().map(|value| value.min(0.6)).collect::<Vec<_>>(), "saturated");
         says(&clean.iter().map(|value| value.min(0.95)).collect::<Vec<_>>(), "saturated");
         says(&[3.0; 401], "nearly the same");
+        // Scatter without a trend, from the fractional parts of multiples of the golden section's square.
+        let scatter: Vec<f64> =
+            (0..401).map(|i| 1.0 + (f64::from(i).powi(2) * 0.381_966_011_250_105).fract()).collect();
+        says(&scatter, "noise");
         let short: Vec<f64> = nm[..170].to_vec();
         assert!(found(&short, &clean[..170]).warnings[0].contains("cut off"));
         says(&clean.iter().map(|value| value - 0.03).collect::<Vec<_>>(), "negative");

@@ -26,20 +26,20 @@ pub(super) fn open(path: &Path) -> Result<(State, String), String> {
 }
 
 /// Keeps one window's project.
-pub(super) struct Session {
+pub(super) struct Documents {
     keeper: Option<Keeper>,
     journalled: bool,
     /// What ended windows left unsaved.
     pub(super) left_behind: Vec<Leftover>,
 }
 
-impl Session {
+impl Documents {
     /// Keeps a state: in the user's journal folder, or without a journal.
     pub(super) fn start(state: &mut State, journalled: bool) -> Self {
         let left_behind = if journalled { Keeper::left_behind() } else { Vec::new() };
-        let mut session = Self { keeper: None, journalled, left_behind };
-        session.begin(state, None);
-        session
+        let mut documents = Self { keeper: None, journalled, left_behind };
+        documents.begin(state, None);
+        documents
     }
 
     fn begin(&mut self, state: &mut State, sha256: Option<String>) {
